@@ -1,0 +1,5 @@
+//! Studies: what a user asks, read from TOML, validated and resolved to SI.
+
+mod resolved;
+
+pub use resolved::*;
