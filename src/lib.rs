@@ -1,4 +1,5 @@
 //! Architecture of switch-mode CMOS output stages: efficiency, output power and area over the whole design space.
 
+pub mod numerics;
 pub mod study;
 pub mod technology;

@@ -1,0 +1,6 @@
+//! Small dense numerics of our own: scalars with derivatives, fixed-size matrices. No physics.
+
+pub mod complex;
+pub mod matrix;
+pub mod root;
+pub mod scalar;
