@@ -1,5 +1,9 @@
 //! Architecture of switch-mode CMOS output stages: efficiency, output power and area over the whole design space.
 
+pub mod budget;
+pub mod evaluate;
 pub mod numerics;
+pub mod stage;
+pub mod steady;
 pub mod study;
 pub mod technology;

@@ -48,10 +48,7 @@ pub fn apply<S: Scalar, const N: usize>(a: &Matrix<S, N>, x: &Column<S, N>) -> C
 
 /// `e·w·eᵀ` for a symmetric `w`; the result is symmetric.
 #[inline(always)]
-pub fn congruence<S: Scalar, const N: usize>(
-    e: &Matrix<S, N>,
-    w: &Matrix<S, N>,
-) -> Matrix<S, N> {
+pub fn congruence<S: Scalar, const N: usize>(e: &Matrix<S, N>, w: &Matrix<S, N>) -> Matrix<S, N> {
     let ew = product(e, w);
     let mut c = [[S::zero(); N]; N];
     for i in 0..N {
@@ -110,7 +107,10 @@ pub fn solve<S: Scalar, const N: usize>(
 pub fn norm_one<S: Scalar, const N: usize>(a: &Matrix<S, N>) -> f64 {
     (0..N)
         .map(|j| a.iter().map(|row| row[j].value().abs()).sum())
-        .fold(0.0, |a: f64, b: f64| if b > a || b.is_nan() { b } else { a })
+        .fold(
+            0.0,
+            |a: f64, b: f64| if b > a || b.is_nan() { b } else { a },
+        )
 }
 
 /// Most halvings an exponential may take: `‖x‖` up to 2^48·[`STEP_NORM`].
