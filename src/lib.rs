@@ -3,6 +3,7 @@
 pub mod budget;
 pub mod evaluate;
 pub mod numerics;
+pub mod search;
 pub mod stage;
 pub mod steady;
 pub mod study;

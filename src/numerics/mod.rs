@@ -1,6 +1,7 @@
 //! Small dense numerics of our own: scalars with derivatives, fixed-size matrices. No physics.
 
 pub mod complex;
+pub mod hypervolume;
 pub mod matrix;
 pub mod root;
 pub mod scalar;
