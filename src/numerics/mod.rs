@@ -1,7 +1,10 @@
 //! Small dense numerics of our own: scalars with derivatives, fixed-size matrices. No physics.
 
+pub mod chebyshev;
 pub mod complex;
+pub mod elliptic;
 pub mod hypervolume;
 pub mod matrix;
 pub mod root;
 pub mod scalar;
+pub mod symmetric;

@@ -1,0 +1,554 @@
+//! Sequential quadratic programming as an argmin solver: bounds and limits are constraints, never penalties in the answer.
+//!
+//! Each iteration solves a quadratic model of the Lagrangian under the linearised constraints
+//! ([`super::quadratic`]), steps along it by Han's exact merit function (Han, JOTA 22, 1977; penalties after Powell,
+//! 1978), with a second-order correction (Fletcher 1982) where curvature of the constraints would cut the step,
+//! and updates the model by damped BFGS (Powell 1978; Nocedal and Wright, *Numerical Optimization*, ch. 18).
+
+use super::quadratic::{HalfSpace, MOST_VARIABLES, Minimum, NoMinimum, Row, minimise};
+use argmin::core::{Error, IterState, KV, Problem, Solver, TerminationReason, TerminationStatus};
+use arrayvec::ArrayVec;
+
+/// Most general constraints of a problem.
+pub const MOST_CONSTRAINTS: usize = 28;
+
+/// A function's value and gradient.
+#[derive(Debug, Clone, Copy)]
+pub struct Linear {
+    /// Value.
+    pub value: f64,
+    /// Gradient.
+    pub gradient: Row,
+}
+
+/// Cost and constraints at one point.
+#[derive(Debug, Clone)]
+pub struct Assessment {
+    /// To be minimised.
+    pub cost: Linear,
+    /// Each to be ≥ 0, scaled to order 1.
+    pub constraints: ArrayVec<Linear, MOST_CONSTRAINTS>,
+}
+
+/// A smooth problem in a box.
+pub trait Constrained {
+    /// Number of variables.
+    fn size(&self) -> usize;
+    /// Lower and upper bound of a variable.
+    fn bounds(&self, variable: usize) -> (f64, f64);
+    /// Cost and constraints with gradients; `None` where they do not exist.
+    fn assess(&self, point: &Row) -> Option<Assessment>;
+}
+
+/// How an optimisation ended.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Ended {
+    /// Stationary and feasible to tolerance.
+    Converged,
+    /// No further descent along the model; the residual says how near.
+    Stalled,
+    /// The linearised constraints contradict each other.
+    Infeasible,
+    /// The start cannot be assessed.
+    NoStart,
+    /// Still running when the iterations ran out.
+    Unfinished,
+}
+
+/// Curvature carried from one problem to a neighbour.
+pub type Curvature = [Row; MOST_VARIABLES];
+
+/// The solver with its state; read it after the run.
+#[derive(Debug, Clone)]
+pub struct SequentialQuadratic {
+    /// Where it is.
+    pub point: Row,
+    /// Assessment there.
+    pub assessment: Option<Assessment>,
+    /// Model of the Lagrangian's curvature.
+    pub curvature: Curvature,
+    /// First-order optimality residual of the last model: the largest component of the Lagrangian's gradient,
+    /// complementarity or violation.
+    pub residual: f64,
+    /// Largest violation of a constraint.
+    pub violation: f64,
+    /// Multipliers of the general constraints at the last model.
+    pub multipliers: ArrayVec<f64, MOST_CONSTRAINTS>,
+    /// How it ended.
+    pub ended: Ended,
+    penalties: ArrayVec<f64, MOST_CONSTRAINTS>,
+    tolerance: f64,
+    resets: u32,
+}
+
+/// The identity.
+pub fn no_curvature() -> Curvature {
+    let mut h = [[0.0; MOST_VARIABLES]; MOST_VARIABLES];
+    for (i, row) in h.iter_mut().enumerate() {
+        row[i] = 1.0;
+    }
+    h
+}
+
+impl SequentialQuadratic {
+    /// Starts at `point` with what is known of the curvature.
+    pub fn new(point: Row, curvature: Curvature, tolerance: f64) -> Self {
+        Self {
+            point,
+            assessment: None,
+            curvature,
+            residual: f64::INFINITY,
+            violation: f64::INFINITY,
+            multipliers: ArrayVec::new(),
+            ended: Ended::Unfinished,
+            penalties: ArrayVec::new(),
+            tolerance,
+            resets: 0,
+        }
+    }
+
+    /// Solves the quadratic model, the constraints' own values scaled back while they contradict each other.
+    fn model<O: Constrained>(
+        &self,
+        problem: &O,
+        a: &Assessment,
+        values: impl Fn(usize) -> f64,
+    ) -> Option<(Minimum, f64)> {
+        let n = problem.size();
+        for relaxed in [1.0, 0.5, 0.1, 0.01] {
+            let mut half_spaces: ArrayVec<HalfSpace, { MOST_CONSTRAINTS + 2 * MOST_VARIABLES }> =
+                ArrayVec::new();
+            for (j, c) in a.constraints.iter().enumerate() {
+                let value = values(j);
+                half_spaces.push(HalfSpace {
+                    normal: c.gradient,
+                    offset: if value < 0.0 {
+                        -value * relaxed
+                    } else {
+                        -value
+                    },
+                });
+            }
+            for i in 0..n {
+                let (low, high) = problem.bounds(i);
+                let mut normal = [0.0; MOST_VARIABLES];
+                normal[i] = 1.0;
+                half_spaces.push(HalfSpace {
+                    normal,
+                    offset: low - self.point[i],
+                });
+                normal[i] = -1.0;
+                half_spaces.push(HalfSpace {
+                    normal,
+                    offset: self.point[i] - high,
+                });
+            }
+            match minimise(n, &self.curvature, &a.cost.gradient, &half_spaces) {
+                Ok(minimum) => return Some((minimum, relaxed)),
+                Err(NoMinimum::Infeasible) => {}
+                Err(NoMinimum::Numbers) => return None,
+            }
+        }
+        None
+    }
+
+    fn merit(&self, a: &Assessment) -> f64 {
+        a.cost.value
+            + a.constraints
+                .iter()
+                .zip(&self.penalties)
+                .map(|(c, p)| p * (-c.value).max(0.0))
+                .sum::<f64>()
+    }
+
+    /// `∇cost − Σ multiplier·∇constraint`.
+    fn lagrangian_gradient(&self, n: usize, a: &Assessment) -> Row {
+        let mut g = a.cost.gradient;
+        for (c, m) in a.constraints.iter().zip(&self.multipliers) {
+            for (slot, slope) in g.iter_mut().zip(&c.gradient).take(n) {
+                *slot -= m * slope;
+            }
+        }
+        g
+    }
+
+    /// Damped BFGS: `step` from `before` to `after` with the current multipliers.
+    fn learn(&mut self, n: usize, step: &Row, before: &Assessment, after: &Assessment) {
+        let (g0, g1) = (
+            self.lagrangian_gradient(n, before),
+            self.lagrangian_gradient(n, after),
+        );
+        let mut y = [0.0; MOST_VARIABLES];
+        let mut hs = [0.0; MOST_VARIABLES];
+        for i in 0..n {
+            y[i] = g1[i] - g0[i];
+            hs[i] = (0..n).map(|k| self.curvature[i][k] * step[k]).sum();
+        }
+        let shs = dot(n, step, &hs);
+        let sy = dot(n, step, &y);
+        if shs <= f64::MIN_POSITIVE || !sy.is_finite() {
+            return;
+        }
+        if sy < 0.2 * shs {
+            let theta = 0.8 * shs / (shs - sy);
+            for i in 0..n {
+                y[i] = theta * y[i] + (1.0 - theta) * hs[i];
+            }
+        }
+        let sy = dot(n, step, &y);
+        for i in 0..n {
+            for k in 0..n {
+                self.curvature[i][k] += y[i] * y[k] / sy - hs[i] * hs[k] / shs;
+            }
+        }
+    }
+
+    fn assess<O: Constrained>(
+        problem: &mut Problem<O>,
+        point: &Row,
+    ) -> Result<Option<Assessment>, Error> {
+        problem.problem("assessments", |p| Ok(p.assess(point)))
+    }
+
+    fn moved<O: Constrained>(&self, problem: &O, step: &Row, length: f64) -> Row {
+        let mut point = self.point;
+        for i in 0..problem.size() {
+            let (low, high) = problem.bounds(i);
+            point[i] = (point[i] + length * step[i]).clamp(low, high);
+        }
+        point
+    }
+
+    /// One iteration; the new point is in `self`.
+    fn iterate<O: Constrained>(&mut self, problem: &mut Problem<O>) -> Result<(), Error> {
+        let Some(owner) = problem.problem.as_ref() else {
+            return Err(Error::msg("the problem is gone"));
+        };
+        let n = owner.size();
+        let Some(a) = self.assessment.take() else {
+            self.ended = Ended::NoStart;
+            return Ok(());
+        };
+        let model = self.model(owner, &a, |j| a.constraints[j].value);
+        let Some((minimum, relaxed)) = model else {
+            if self.resets < 2 {
+                self.resets += 1;
+                self.curvature = no_curvature();
+            } else {
+                self.ended = Ended::Infeasible;
+            }
+            self.assessment = Some(a);
+            return Ok(());
+        };
+        let step = minimum.point;
+        self.multipliers = minimum.multipliers[..a.constraints.len()]
+            .iter()
+            .copied()
+            .collect();
+        self.violation = violation(&a);
+        self.residual = self.measure(n, owner, &a, &minimum);
+        let length: f64 = step[..n].iter().fold(0.0, |m, s| m.max(s.abs()));
+        if self.residual <= self.tolerance {
+            self.ended = Ended::Converged;
+            self.assessment = Some(a);
+            return Ok(());
+        }
+        if relaxed < 1.0 && length < 1e-9 && self.violation > self.tolerance {
+            self.ended = Ended::Infeasible;
+            self.assessment = Some(a);
+            return Ok(());
+        }
+        for (j, m) in self.multipliers.iter().enumerate() {
+            match self.penalties.get_mut(j) {
+                Some(p) => *p = m.max(0.5 * (*p + m)),
+                None => self.penalties.push(*m),
+            }
+        }
+        // A limit broken now must weigh, whatever its multiplier says.
+        for (p, c) in self.penalties.iter_mut().zip(&a.constraints) {
+            if c.value < 0.0 {
+                *p = p.max(1.0);
+            }
+        }
+        let merit = self.merit(&a);
+        let weighted: f64 = a
+            .constraints
+            .iter()
+            .zip(&self.penalties)
+            .map(|(c, p)| p * (-c.value).max(0.0))
+            .sum();
+        let descent = (dot(n, &a.cost.gradient, &step) - relaxed * weighted).min(0.0);
+        let mut factor = 1.0;
+        for trial in 0..30 {
+            let Some(owner) = problem.problem.as_ref() else {
+                return Err(Error::msg("the problem is gone"));
+            };
+            let point = self.moved(owner, &step, factor);
+            let assessed = Self::assess(problem, &point)?;
+            if let Some(next) = assessed {
+                let enough = merit + 1e-4 * factor * descent + 1e-15 * merit.abs();
+                if self.merit(&next) <= enough {
+                    self.accept(n, point, &a, next);
+                    return Ok(());
+                }
+                if trial == 0 && violation(&next) > self.violation.max(self.tolerance) {
+                    if self.correct(problem, &a, &next, &step, enough)? {
+                        return Ok(());
+                    }
+                }
+                factor *= 0.4;
+            } else {
+                factor *= 0.2;
+            }
+        }
+        // No descent at all: forget the curvature once, then give up.
+        if self.resets < 2 {
+            self.resets += 1;
+            self.curvature = no_curvature();
+        } else {
+            self.ended = Ended::Stalled;
+        }
+        self.assessment = Some(a);
+        Ok(())
+    }
+
+    fn accept(&mut self, n: usize, point: Row, before: &Assessment, after: Assessment) {
+        let mut step = [0.0; MOST_VARIABLES];
+        for i in 0..n {
+            step[i] = point[i] - self.point[i];
+        }
+        self.learn(n, &step, before, &after);
+        self.point = point;
+        self.assessment = Some(after);
+    }
+
+    /// Second-order correction: the model again with the constraints as they turned out at the full step.
+    fn correct<O: Constrained>(
+        &mut self,
+        problem: &mut Problem<O>,
+        a: &Assessment,
+        full: &Assessment,
+        step: &Row,
+        enough: f64,
+    ) -> Result<bool, Error> {
+        let Some(owner) = problem.problem.as_ref() else {
+            return Err(Error::msg("the problem is gone"));
+        };
+        let n = owner.size();
+        let curved =
+            |j: usize| full.constraints[j].value - dot(n, &a.constraints[j].gradient, step);
+        let Some((corrected, _)) = self.model(owner, a, curved) else {
+            return Ok(false);
+        };
+        let point = self.moved(owner, &corrected.point, 1.0);
+        if let Some(next) = Self::assess(problem, &point)?
+            && self.merit(&next) <= enough
+        {
+            self.accept(n, point, a, next);
+            return Ok(true);
+        }
+        Ok(false)
+    }
+
+    /// Residual of the first-order conditions (Karush, Kuhn and Tucker) at the current point with the model's
+    /// multipliers, bounds included.
+    fn measure<O: Constrained>(
+        &self,
+        n: usize,
+        problem: &O,
+        a: &Assessment,
+        minimum: &Minimum,
+    ) -> f64 {
+        let general = a.constraints.len();
+        let mut gradient = self.lagrangian_gradient(n, a);
+        let mut worst = self.violation;
+        for i in 0..n {
+            let (low, high) = problem.bounds(i);
+            let at_low = minimum.multipliers[general + 2 * i];
+            let at_high = minimum.multipliers[general + 2 * i + 1];
+            gradient[i] += at_high - at_low;
+            worst = worst
+                .max(gradient[i].abs())
+                .max(at_low * (self.point[i] - low))
+                .max(at_high * (high - self.point[i]));
+        }
+        for (c, m) in a.constraints.iter().zip(&minimum.multipliers) {
+            worst = worst.max(m * c.value.abs());
+        }
+        worst
+    }
+}
+
+fn dot(n: usize, a: &Row, b: &Row) -> f64 {
+    (0..n).map(|i| a[i] * b[i]).sum()
+}
+
+fn violation(a: &Assessment) -> f64 {
+    a.constraints
+        .iter()
+        .fold(0.0, |worst, c| worst.max(-c.value))
+}
+
+/// The state argmin keeps: parameters and cost; everything else is the solver's own.
+pub type SolverState = IterState<Vec<f64>, (), (), (), (), f64>;
+
+impl<O: Constrained> Solver<O, SolverState> for SequentialQuadratic {
+    fn name(&self) -> &str {
+        "sequential quadratic programming"
+    }
+
+    fn init(
+        &mut self,
+        problem: &mut Problem<O>,
+        state: SolverState,
+    ) -> Result<(SolverState, Option<KV>), Error> {
+        let point = self.point;
+        self.assessment = Self::assess(problem, &point)?;
+        if self.assessment.is_none() {
+            self.ended = Ended::NoStart;
+        }
+        Ok((state, None))
+    }
+
+    fn next_iter(
+        &mut self,
+        problem: &mut Problem<O>,
+        state: SolverState,
+    ) -> Result<(SolverState, Option<KV>), Error> {
+        self.iterate(problem)?;
+        let cost = self
+            .assessment
+            .as_ref()
+            .map_or(f64::INFINITY, |a| a.cost.value);
+        Ok((state.param(self.point.to_vec()).cost(cost), None))
+    }
+
+    fn terminate(&mut self, _state: &SolverState) -> TerminationStatus {
+        match self.ended {
+            Ended::Unfinished => TerminationStatus::NotTerminated,
+            Ended::Converged => TerminationStatus::Terminated(TerminationReason::SolverConverged),
+            other => {
+                TerminationStatus::Terminated(TerminationReason::SolverExit(format!("{other:?}")))
+            }
+        }
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use argmin::core::Executor;
+
+    /// The residual asked of the solver; minima are then right to about its square root in flat directions.
+    const RESIDUAL: f64 = 1e-9;
+    const PLACE: f64 = 1e-6;
+
+    struct Toy<F: Fn(&Row) -> Option<Assessment>>(usize, (f64, f64), F);
+
+    impl<F: Fn(&Row) -> Option<Assessment>> Constrained for Toy<F> {
+        fn size(&self) -> usize {
+            self.0
+        }
+        fn bounds(&self, _: usize) -> (f64, f64) {
+            self.1
+        }
+        fn assess(&self, point: &Row) -> Option<Assessment> {
+            self.2(point)
+        }
+    }
+
+    fn linear(value: f64, gradient: &[f64]) -> Linear {
+        let mut g = [0.0; MOST_VARIABLES];
+        g[..gradient.len()].copy_from_slice(gradient);
+        Linear { value, gradient: g }
+    }
+
+    fn run<O: Constrained>(problem: O, start: &[f64]) -> SequentialQuadratic {
+        let mut point = [0.0; MOST_VARIABLES];
+        point[..start.len()].copy_from_slice(start);
+        Executor::new(
+            problem,
+            SequentialQuadratic::new(point, no_curvature(), RESIDUAL),
+        )
+        .configure(|s| s.max_iters(200))
+        .ctrlc(false)
+        .run()
+        .unwrap()
+        .solver
+    }
+
+    /// Rosenbrock's valley (1960): minimum 0 at (1, 1); inside the box and with the box cutting it.
+    #[test]
+    fn published_rosenbrock_free_and_on_a_bound() {
+        let valley = |p: &Row| {
+            let (x, y) = (p[0], p[1]);
+            Some(Assessment {
+                cost: linear(
+                    (1.0 - x).powi(2) + 100.0 * (y - x * x).powi(2),
+                    &[
+                        -2.0 * (1.0 - x) - 400.0 * x * (y - x * x),
+                        200.0 * (y - x * x),
+                    ],
+                ),
+                constraints: ArrayVec::new(),
+            })
+        };
+        let free = run(Toy(2, (-2.0, 2.0), valley), &[-1.2, 1.0]);
+        assert_eq!(free.ended, Ended::Converged);
+        assert!((free.point[0] - 1.0).abs() < PLACE && (free.point[1] - 1.0).abs() < PLACE);
+        // With x ≤ 0.5 the minimum is at (0.5, 0.25).
+        let bounded = run(Toy(2, (-2.0, 0.5), valley), &[-1.2, 0.4]);
+        assert_eq!(bounded.ended, Ended::Converged);
+        assert!((bounded.point[0] - 0.5).abs() < PLACE && (bounded.point[1] - 0.25).abs() < PLACE);
+    }
+
+    /// Hock and Schittkowski (1981), problem 71, from memory: minimum 17.0140173 at (1, 4.743, 3.8211, 1.3794).
+    /// Its equality is met by two inequalities here; its start is theirs.
+    #[test]
+    fn published_hock_schittkowski_71() {
+        let problem = |p: &Row| {
+            let (a, b, c, d) = (p[0], p[1], p[2], p[3]);
+            let squares = (a * a + b * b + c * c + d * d - 40.0) / 40.0;
+            let slopes = [a / 20.0, b / 20.0, c / 20.0, d / 20.0];
+            let mut constraints = ArrayVec::new();
+            constraints.push(linear(
+                (a * b * c * d - 25.0) / 25.0,
+                &[
+                    b * c * d / 25.0,
+                    a * c * d / 25.0,
+                    a * b * d / 25.0,
+                    a * b * c / 25.0,
+                ],
+            ));
+            constraints.push(linear(-squares, &slopes.map(|s| -s)));
+            Some(Assessment {
+                cost: linear(
+                    a * d * (a + b + c) + c,
+                    &[d * (2.0 * a + b + c), a * d, a * d + 1.0, a * (a + b + c)],
+                ),
+                constraints,
+            })
+        };
+        let solved = run(Toy(4, (1.0, 5.0), problem), &[1.0, 5.0, 5.0, 1.0]);
+        // The inequality form has the same minimum: the sphere binds from outside.
+        assert_eq!(solved.ended, Ended::Converged);
+        assert!((solved.assessment.unwrap().cost.value - 17.014_017_3).abs() < 1e-6);
+        assert!((solved.point[1] - 4.743).abs() < 1e-3);
+    }
+
+    #[test]
+    fn law_contradicting_constraints_are_reported() {
+        let problem = |p: &Row| {
+            let mut constraints = ArrayVec::new();
+            constraints.push(linear(p[0] - 0.8, &[1.0]));
+            constraints.push(linear(0.2 - p[0], &[-1.0]));
+            Some(Assessment {
+                cost: linear(p[0] * p[0], &[2.0 * p[0]]),
+                constraints,
+            })
+        };
+        let solved = run(Toy(1, (0.0, 1.0), problem), &[0.5]);
+        assert_ne!(solved.ended, Ended::Converged);
+        assert!(solved.violation > 0.1);
+    }
+}
