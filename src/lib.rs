@@ -1,8 +1,10 @@
 //! Architecture of switch-mode CMOS output stages: efficiency, output power and area over the whole design space.
 
 pub mod budget;
+pub mod cli;
 pub mod evaluate;
 pub mod numerics;
+pub mod quantity;
 pub mod search;
 pub mod stage;
 pub mod steady;

@@ -1,1 +1,7 @@
-fn main() {}
+//! The `widefront` command.
+
+use std::process::ExitCode;
+
+fn main() -> ExitCode {
+    widefront::cli::run()
+}

@@ -1,0 +1,124 @@
+//! The command line: parse, dispatch, exit code. Results go to standard output, diagnostics to standard error.
+
+mod check;
+mod evaluate;
+mod search;
+
+use crate::evaluate::Setup;
+use crate::study::diagnostics::Faults;
+use crate::study::{self, StudyFile};
+use crate::technology::{self, Technology};
+use clap::{Parser, Subcommand};
+use std::io::Write;
+use std::path::{Path, PathBuf};
+use std::process::ExitCode;
+
+/// Pareto fronts of efficiency, output power and area for switch-mode CMOS output stages.
+#[derive(Debug, Parser)]
+#[command(name = "widefront", version, about, long_about = None, arg_required_else_help = true)]
+struct Arguments {
+    #[command(subcommand)]
+    command: Command,
+}
+
+#[derive(Debug, Subcommand)]
+enum Command {
+    /// Read and validate a study; print what it resolves to.
+    Check {
+        /// The study file.
+        study: PathBuf,
+    },
+    /// Evaluate the design of a study.
+    Evaluate {
+        /// The study file.
+        study: PathBuf,
+        /// Change a value of [design], as the file would hold it: supply=1.0V. May be repeated.
+        #[arg(long, value_name = "KEY=VALUE")]
+        set: Vec<String>,
+        /// Print one JSON object and nothing else.
+        #[arg(long)]
+        json: bool,
+    },
+    /// Search every cell of loaded Q and supply for its Pareto front; write a run folder.
+    Search(search::SearchArguments),
+}
+
+/// Why a command did not succeed.
+#[derive(Debug)]
+pub(crate) enum Failure {
+    /// The input is at fault: exit code 2.
+    Input(String),
+    /// It ran and failed: exit code 1.
+    Run(String),
+}
+
+impl From<Faults> for Failure {
+    fn from(faults: Faults) -> Self {
+        Self::Input(faults.to_string())
+    }
+}
+
+/// Runs the command line and gives its exit code.
+pub fn run() -> ExitCode {
+    let result = match Arguments::parse().command {
+        Command::Check { study } => check::run(&study),
+        Command::Evaluate { study, set, json } => evaluate::run(&study, &set, json),
+        Command::Search(arguments) => search::run(&arguments),
+    };
+    match result {
+        Ok(()) => ExitCode::SUCCESS,
+        Err(Failure::Input(message)) => {
+            complain(&message);
+            ExitCode::from(2)
+        }
+        Err(Failure::Run(message)) => {
+            complain(&message);
+            ExitCode::from(1)
+        }
+    }
+}
+
+fn complain(message: &str) {
+    for line in message.lines() {
+        if line.starts_with("  ") {
+            eprintln!("{line}");
+        } else {
+            eprintln!("error: {line}");
+        }
+    }
+}
+
+/// Writes to standard output; a reader that went away is no error of ours.
+pub(crate) fn print(text: &str) -> Result<(), Failure> {
+    let mut out = std::io::stdout().lock();
+    match out.write_all(text.as_bytes()).and_then(|()| out.flush()) {
+        Err(e) if e.kind() == std::io::ErrorKind::BrokenPipe => Ok(()),
+        Err(e) => Err(Failure::Run(format!("standard output: {e}"))),
+        Ok(()) => Ok(()),
+    }
+}
+
+/// A study with its technology.
+pub(crate) struct Loaded {
+    pub file: StudyFile,
+    pub technology: Technology,
+    pub setup: Setup,
+}
+
+/// Reads a study and its technology and holds them to each other; warnings go to standard error.
+pub(crate) fn load(path: &Path, set: &[String]) -> Result<Loaded, Failure> {
+    let mut file = study::read(path)?;
+    for assignment in set {
+        study::set_design(&mut file, assignment)?;
+    }
+    let technology = technology::read(&file.study.technology)?;
+    for warning in technology::match_study(&file, &technology)? {
+        eprintln!("warning: {warning}");
+    }
+    let setup = Setup::new(&file.study, &technology).map_err(|e| Failure::Input(e.to_string()))?;
+    Ok(Loaded {
+        file,
+        technology,
+        setup,
+    })
+}
