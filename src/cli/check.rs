@@ -1,7 +1,7 @@
 //! `widefront check`: what a study resolves to.
 
 use super::{Failure, Loaded, load, print};
-use crate::quantity::engineering;
+use crate::quantity::format as engineering;
 use crate::search::space;
 use crate::stage::driver::{fastest_taper, inverter_capacitances};
 use crate::study::{Range, Space};

@@ -3,7 +3,7 @@
 use super::{Failure, load, print};
 use crate::budget::LOSS_NAMES;
 use crate::evaluate::{Evaluation, Figures, evaluate};
-use crate::quantity::engineering;
+use crate::quantity::format as engineering;
 use std::fmt::Write;
 use std::path::Path;
 

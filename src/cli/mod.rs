@@ -5,8 +5,7 @@ mod evaluate;
 mod search;
 
 use crate::evaluate::Setup;
-use crate::study::diagnostics::Faults;
-use crate::study::{self, StudyFile};
+use crate::study::{self, Faults, StudyFile};
 use crate::technology::{self, Technology};
 use clap::{Parser, Subcommand};
 use std::io::Write;
@@ -111,10 +110,11 @@ pub(crate) fn load(path: &Path, set: &[String]) -> Result<Loaded, Failure> {
     for assignment in set {
         study::set_design(&mut file, assignment)?;
     }
-    let technology = technology::read(&file.study.technology)?;
-    for warning in technology::match_study(&file, &technology)? {
+    let technology = technology::read_for(&file)?;
+    for warning in file.warnings.iter().chain(&technology.warnings) {
         eprintln!("warning: {warning}");
     }
+    let technology = technology.technology;
     let setup = Setup::new(&file.study, &technology).map_err(|e| Failure::Input(e.to_string()))?;
     Ok(Loaded {
         file,

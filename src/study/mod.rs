@@ -1,10 +1,19 @@
 //! Studies: what a user asks, read from TOML, validated and resolved to SI.
 
-pub mod diagnostics;
-pub mod document;
+mod assign;
+mod diagnostics;
+mod entries;
+pub(crate) mod figure;
+mod lines;
+pub(crate) mod raw;
 mod read;
 mod resolved;
+mod spelling;
+mod variables;
 
-pub(crate) use read::schema;
-pub use read::{StudyFile, read, read_str, set_design};
+pub use assign::{DESIGN_KEYS, set_design};
+pub use diagnostics::{Fault, FaultKind, Faults, Origin, Warning, WarningKind};
+pub use lines::Lines;
+pub use read::{SCHEMA, StudyFile, read, read_str};
 pub use resolved::*;
+pub use spelling::nearest;

@@ -1,583 +1,275 @@
-//! A study file to a [`Study`]: every key typed, ranged and explained.
+//! From the text of a study to a [`Study`].
 
-use super::diagnostics::{Fault, Faults, nearest, one_of};
-use super::document::{self, Entry, Reader, Span, Table, span};
-use super::*;
+use super::diagnostics::{Faults, Warning, WarningKind};
+use super::figure::{above, number, quantity, whole, within};
+use super::lines::Lines;
+use super::raw::{Section, load, walk};
+use super::resolved::*;
+use super::variables::*;
 use crate::quantity::Dimension;
-use std::collections::BTreeMap;
-use std::path::{Path, PathBuf};
+use std::path::Path;
 
-/// A study with where its keys stand.
+/// Version of the study format.
+pub const SCHEMA: i64 = 1;
+/// Junction temperature when the study gives none, K (27 degC).
+const DEFAULT_TEMPERATURE_K: f64 = 300.15;
+/// Seed when the study gives none.
+const DEFAULT_SEED: u32 = 1;
+
+/// A study and what later checks need to speak of its file.
 #[derive(Debug, Clone, PartialEq)]
 pub struct StudyFile {
-    /// The study.
+    /// The study, resolved.
     pub study: Study,
-    /// The file as the user named it.
-    pub path: PathBuf,
-    /// Line of each key, by `table.key`.
-    pub lines: BTreeMap<String, usize>,
+    /// Where every key stands.
+    pub lines: Lines,
+    /// What may not be meant.
+    pub warnings: Vec<Warning>,
+    /// The file as read, for hashing and copying.
+    pub text: String,
+    /// The technology's path as the study has it.
+    pub(crate) technology_as_written: String,
 }
 
-impl StudyFile {
-    /// A fault at a key of this file.
-    pub fn fault(&self, table: &str, key: &str, read: String, allowed: String) -> Fault {
-        Fault {
-            file: self.path.display().to_string(),
-            line: self
-                .lines
-                .get(&format!("{table}.{key}"))
-                .or_else(|| self.lines.get(table))
-                .copied(),
-            key: format!("[{table}] {key}"),
-            read,
-            allowed,
-            help: None,
-        }
-    }
-}
-
-/// One variable of `[space]` and `[design]`.
-struct VariableKey {
-    key: &'static str,
-    dimension: Option<Dimension>,
-    span: Span,
-    whole: bool,
-}
-
-const fn continuous(key: &'static str, dimension: Option<Dimension>, span: Span) -> VariableKey {
-    VariableKey {
-        key,
-        dimension,
-        span,
-        whole: false,
-    }
-}
-
-const fn whole(key: &'static str, span: Span) -> VariableKey {
-    VariableKey {
-        key,
-        dimension: None,
-        span,
-        whole: true,
-    }
-}
-
-const SUPPLY: VariableKey = continuous(
-    "supply",
-    Some(Dimension::Voltage),
-    span(0.1, 50.0, "0.1 V to 50 V"),
-);
-const LOADED_Q: VariableKey = continuous("loaded_q", None, span(0.2, 1e6, "0.2 to 1e6"));
-const NMOS_WIDTH: VariableKey = continuous(
-    "nmos_width",
-    Some(Dimension::Length),
-    span(1e-7, 1.0, "0.1 um to 1 m"),
-);
-const WIDTH_RATIO: VariableKey = continuous("width_ratio", None, span(0.05, 20.0, "0.05 to 20"));
-const TURNS: VariableKey = whole("turns", span(1.0, 20.0, "1 to 20"));
-const TRACE: VariableKey = continuous(
-    "trace",
-    Some(Dimension::Length),
-    span(1e-7, 1e-3, "0.1 um to 1 mm"),
-);
-const DIAMETER: VariableKey = continuous(
-    "diameter",
-    Some(Dimension::Length),
-    span(1e-6, 2e-2, "1 um to 20 mm"),
-);
-const RESISTANCE: VariableKey = continuous(
-    "resistance",
-    Some(Dimension::Resistance),
-    span(1e-3, 1e6, "1 mohm to 1 Mohm"),
-);
-const REACTANCE: VariableKey = continuous("reactance", None, span(0.0, 20.0, "0 to 20"));
-const DEAD_TIME: VariableKey =
-    continuous("dead_time", None, span(0.0, 0.45, "0 to 0.45 of a period"));
-const STAGES: VariableKey = whole("stages", span(1.0, 20.0, "1 to 20"));
-
-/// Keys of `[design]`, in the order of the documentation.
-const DESIGN_KEYS: [&VariableKey; 11] = [
-    &SUPPLY,
-    &LOADED_Q,
-    &NMOS_WIDTH,
-    &WIDTH_RATIO,
-    &TURNS,
-    &TRACE,
-    &DIAMETER,
-    &RESISTANCE,
-    &REACTANCE,
-    &DEAD_TIME,
-    &STAGES,
-];
-
-const TEMPERATURE: Span = span(173.15, 523.15, "-100 degC to 250 degC");
-const FREQUENCY: Span = span(1e6, 1e12, "1 MHz to 1 THz");
-const POSITIVE_RESISTANCE: Span = span(1e-3, 1e6, "1 mohm to 1 Mohm");
-const LOSS: Span = span(0.0, 60.0, "0 dB to 60 dB");
-const INPUT_CAPACITANCE: Span = span(1e-18, 1e-6, "1 aF to 1 uF");
-const DRIVER_RATIO: Span = span(0.05, 20.0, "0.05 to 20");
-const CROWBAR: Span = span(0.0, 5.0, "0 to 5");
-const SWING: Span = span(0.05, 50.0, "0.05 V to 50 V");
-const FRACTION: Span = span(1e-6, 1.0, "above 0 and up to 1");
-const HARMONIC: Span = span(-200.0, 0.0, "-200 dBc to 0 dBc");
-const POWER: Span = span(1e-12, 1e6, "-90 dBm to 1 MW");
-const AREA: Span = span(1e-15, 1.0, "1e-9 mm^2 to 1 m^2");
-
-/// Reads and resolves a study file.
-///
-/// # Errors
-/// Every fault found.
+/// Reads and validates a study.
 pub fn read(path: &Path) -> Result<StudyFile, Faults> {
-    read_str(&document::load(path)?, path)
+    read_str(&load(path)?, path)
 }
 
-/// As [`read`], from text.
-///
-/// # Errors
-/// Every fault found.
+/// Validates the text of a study; `path` stands in messages, and the technology's path is taken from its folder.
 pub fn read_str(text: &str, path: &Path) -> Result<StudyFile, Faults> {
-    let reader = Reader::new(path.display().to_string(), text);
-    let parsed = reader.parse()?;
-    let root = reader.root(&parsed);
-    let study = study(&root, path);
-    root.refuse_others();
-    let lines = reader.finish()?;
-    match study {
-        Some(study) => Ok(StudyFile {
-            study,
-            path: path.to_owned(),
-            lines,
-        }),
-        // Every absence is a fault, so `finish` has returned it.
-        None => Err(Faults(Vec::new())),
+    let folder = path.parent().unwrap_or(Path::new(""));
+    let walked = walk(text, path, SCHEMA, |root| {
+        let written = root.text("technology");
+        let study = build(root, folder.join(&written));
+        (study, written)
+    })?;
+    let (study, technology_as_written) = walked.value;
+    Ok(StudyFile {
+        study,
+        lines: walked.lines,
+        warnings: walked.warnings,
+        text: text.to_owned(),
+        technology_as_written,
+    })
+}
+
+fn build(root: &Section<'_, '_>, technology: std::path::PathBuf) -> Study {
+    let title = root.text("title");
+    let temperature = quantity(Dimension::Temperature, within(213.15, 473.15));
+    let temperature_k = root.optional("temperature", temperature);
+    let frequency = quantity(Dimension::Frequency, within(1e6, 3e11));
+    let frequency_hz = root.section("signal").required("frequency", frequency);
+    let antenna = root.section("antenna");
+    let resistance = quantity(Dimension::Resistance, within(0.1, 1e4));
+    let antenna_resistance_ohm = antenna.required("resistance", resistance);
+    let loss = quantity(Dimension::Decibel, within(0.0, 30.0));
+    let antenna_loss_db = antenna.optional("loss", loss).unwrap_or(0.0);
+    drop(antenna);
+    let stage = stage(&root.section("stage"));
+    let driver = driver(&root.section("driver"), stage.stack);
+    let space = root
+        .optional_section("space")
+        .map(|section| space(&section));
+    let limits = root.optional_section("limits");
+    let limits = limits.map_or_else(Limits::default, |section| read_limits(&section));
+    let search = search(root.optional_section("search").as_ref());
+    let design = root
+        .optional_section("design")
+        .map(|section| design(&section));
+    if space.is_none() && design.is_none() {
+        root.warning("", WarningKind::NothingToDo);
     }
-}
-
-/// `schema = 1`.
-pub(crate) fn schema(root: &Table<'_, '_>) -> Option<()> {
-    root.need("schema", "1, the only schema so far")?
-        .whole_exactly(1)
-}
-
-fn study(root: &Table<'_, '_>, path: &Path) -> Option<Study> {
-    let schema = schema(root);
-    let title = root.need("title", "text in quotes").and_then(|e| e.text());
-    let technology = root
-        .need(
-            "technology",
-            "the path of a technology file, relative to this one",
-        )
-        .and_then(|e| e.text());
-    let temperature_k = match root.find("temperature") {
-        Some(e) => e.quantity(Dimension::Temperature, TEMPERATURE),
-        None => Some(300.15),
-    };
-    let frequency_hz = root.need_table("signal").and_then(|t| {
-        let f = t
-            .need("frequency", "a frequency, for example \"2.45 GHz\"")?
-            .quantity(Dimension::Frequency, FREQUENCY);
-        t.refuse_others();
-        f
-    });
-    let antenna = root.need_table("antenna").and_then(|t| {
-        let resistance = t
-            .need("resistance", "a resistance, for example \"50 ohm\"")
-            .and_then(|e| e.quantity(Dimension::Resistance, POSITIVE_RESISTANCE));
-        let loss = match t.find("loss") {
-            Some(e) => e.quantity(Dimension::Loss, LOSS),
-            None => Some(0.0),
-        };
-        t.refuse_others();
-        Some((resistance?, loss?))
-    });
-    let stage = root.need_table("stage").and_then(|t| stage(&t));
-    let driver = root.need_table("driver").and_then(|t| driver(&t));
-    let space = match root.table("space") {
-        Some(t) => space(&t).map(Some),
-        None => Some(None),
-    };
-    let limits = match root.table("limits") {
-        Some(t) => limits(&t),
-        None => Some(Limits::default()),
-    };
-    let search = search(root.table("search").as_ref());
-    let design = match root.table("design") {
-        Some(t) => design(&t).map(Some),
-        None => Some(None),
-    };
-    schema?;
-    let (antenna_resistance_ohm, antenna_loss_db) = antenna?;
-    Some(Study {
-        title: title?.to_owned(),
-        technology: path.parent().unwrap_or(Path::new("")).join(technology?),
-        temperature_k: temperature_k?,
-        frequency_hz: frequency_hz?,
+    Study {
+        title,
+        technology,
+        temperature_k: temperature_k.unwrap_or(DEFAULT_TEMPERATURE_K),
+        frequency_hz,
         antenna_resistance_ohm,
         antenna_loss_db,
-        stage: stage?,
-        driver: driver?,
-        space: space?,
-        limits: limits?,
-        search: search?,
-        design: design?,
-    })
+        stage,
+        driver,
+        space,
+        limits,
+        search,
+        design,
+    }
 }
 
-fn stage(t: &Table<'_, '_>) -> Option<StageChoice> {
-    let legs = t
-        .need("legs", "1 (single-ended) or 2 (differential)")
-        .and_then(|e| e.whole(1, 2));
-    let stack = t
-        .need("stack", "1, or 2 (switch and cascode)")
-        .and_then(|e| e.whole(1, 2));
-    let device = t
-        .need("device", "the name of a transistor pair of the technology")
-        .and_then(|e| e.text());
+fn stage(section: &Section<'_, '_>) -> StageChoice {
     let networks = [("direct", Network::Direct), ("low-pass", Network::LowPass)];
-    let network = t
-        .need("network", "\"direct\" or \"low-pass\"")
-        .and_then(|e| e.choice(&networks));
-    t.refuse_others();
-    Some(StageChoice {
-        legs: legs? as u32,
-        stack: stack? as u32,
-        device: device?.to_owned(),
-        network: network?,
-    })
-}
-
-fn driver(t: &Table<'_, '_>) -> Option<DriverChoice> {
-    let input = t
-        .need("input_capacitance", "a capacitance, for example \"20 fF\"")
-        .and_then(|e| e.quantity(Dimension::Capacitance, INPUT_CAPACITANCE));
-    let ratio = t
-        .need("ratio", "a number, the chain's PMOS/NMOS width")
-        .and_then(|e| e.number(DRIVER_RATIO));
-    let crowbar = t
-        .need(
-            "crowbar",
-            "a number, the drivers' own overlap loss as a fraction",
-        )
-        .and_then(|e| e.number(CROWBAR));
-    let swing = t.need("swing", "\"supply\" or a voltage").and_then(|e| {
-        if e.is_text("supply") {
-            Some(Swing::Supply)
-        } else {
-            e.quantity(Dimension::Voltage, SWING).map(Swing::Voltage)
-        }
-    });
-    t.refuse_others();
-    Some(DriverChoice {
-        input_capacitance_f: input?,
-        ratio: ratio?,
-        crowbar: crowbar?,
-        swing: swing?,
-    })
-}
-
-fn space(t: &Table<'_, '_>) -> Option<Space> {
-    let needed = |v: &VariableKey| {
-        t.need(
-            v.key,
-            "a value or a range { from, to } or { from, to, steps }",
-        )
-        .and_then(|e| range(e, v))
-    };
-    let optional = |v: &VariableKey| match t.find(v.key) {
-        Some(e) => range(e, v).map(Some),
-        None => Some(None),
-    };
-    let supply_v = needed(&SUPPLY);
-    let loaded_q = needed(&LOADED_Q);
-    let nmos_width_m = needed(&NMOS_WIDTH);
-    let width_ratio = needed(&WIDTH_RATIO);
-    let turns = optional(&TURNS);
-    let trace_m = optional(&TRACE);
-    let diameter_m = optional(&DIAMETER);
-    let resistance_ohm = optional(&RESISTANCE);
-    let reactance = needed(&REACTANCE);
-    let dead_time = needed(&DEAD_TIME);
-    let stages = needed(&STAGES);
-    t.refuse_others();
-    Some(Space {
-        supply_v: supply_v?,
-        loaded_q: loaded_q?,
-        nmos_width_m: nmos_width_m?,
-        width_ratio: width_ratio?,
-        turns: turns?,
-        trace_m: trace_m?,
-        diameter_m: diameter_m?,
-        resistance_ohm: resistance_ohm?,
-        reactance: reactance?,
-        dead_time: dead_time?,
-        stages: stages?,
-    })
-}
-
-fn value(entry: &Entry<'_, '_>, v: &VariableKey) -> Option<f64> {
-    if v.whole {
-        entry
-            .whole(v.span.low as i64, v.span.high as i64)
-            .map(|n| n as f64)
-    } else {
-        entry.measured(v.dimension, v.span)
+    StageChoice {
+        legs: section.required("legs", whole(1, 2)) as u32,
+        stack: section.required("stack", whole(1, 2)) as u32,
+        device: section.text("device"),
+        network: section
+            .choice("network", &networks)
+            .unwrap_or(Network::LowPass),
     }
 }
 
-/// One value, `{ from, to }` or `{ from, to, steps }`.
-fn range(entry: Entry<'_, '_>, v: &VariableKey) -> Option<Range> {
-    /// More steps than this are no grid anybody reads.
-    const MOST_STEPS: i64 = 100_000;
-    if !entry.is_table() {
-        return value(&entry, v).map(Range::Fixed);
-    }
-    let line = entry.line();
-    let t = entry.table()?;
-    let from = t.need("from", "the least value").and_then(|e| value(&e, v));
-    let to = t
-        .need("to", "the greatest value")
-        .and_then(|e| value(&e, v));
-    let steps = match t.find("steps") {
-        Some(e) => e.whole(2, MOST_STEPS).map(Some),
-        None => Some(None),
+fn driver(section: &Section<'_, '_>, stack: u32) -> DriverChoice {
+    let capacitance = quantity(Dimension::Capacitance, within(1e-16, 1e-9));
+    let supply = ("supply", Swing::Supply);
+    let driver = DriverChoice {
+        input_capacitance_f: section.required("input_capacitance", capacitance),
+        ratio: section.required("ratio", number(within(0.1, 20.0))),
+        crowbar: section.required("crowbar", number(within(0.0, 1.0))),
+        swing: section.word_or("swing", supply, SUPPLY, Swing::Voltage),
     };
-    t.refuse_others();
-    let (from, to, steps) = (from?, to?, steps?);
-    if from >= to {
-        t.refuse_order(line);
-        return None;
+    if stack > 1 && driver.swing != Swing::Supply {
+        section.warning("swing", WarningKind::SwingUnused);
     }
-    if v.whole {
-        let every = (to - from) as i64 + 1;
-        let steps = steps.unwrap_or(every);
-        if (every - 1) % (steps - 1) != 0 {
-            t.refuse_steps(line, steps, every);
-            return None;
-        }
-        return Some(Range::Grid(grid(from, to, steps)));
-    }
-    Some(match steps {
-        Some(steps) => Range::Grid(grid(from, to, steps)),
-        None => Range::Free { from, to },
-    })
+    driver
 }
 
-/// Evenly spaced values, both ends exact.
-fn grid(from: f64, to: f64, steps: i64) -> Vec<f64> {
-    (0..steps)
-        .map(|i| {
-            let last = (steps - 1) as f64;
-            (from * (last - i as f64) + to * i as f64) / last
-        })
-        .collect()
-}
-
-fn bounds(t: &Table<'_, '_>, key: &str, dimension: Option<Dimension>, s: Span) -> Option<Bounds> {
-    let Some(entry) = t.find(key) else {
-        return Some(Bounds::default());
-    };
-    if !entry.is_table() {
-        entry.refuse("{ at_least = … }, { at_most = … } or both", None);
-        return None;
+fn space(section: &Section<'_, '_>) -> Space {
+    Space {
+        supply_v: section.required_range("supply", SUPPLY),
+        loaded_q: section.required_range("loaded_q", LOADED_Q),
+        nmos_width_m: section.required_range("nmos_width", NMOS_WIDTH),
+        width_ratio: section.required_range("width_ratio", WIDTH_RATIO),
+        turns: section.optional_range("turns", TURNS),
+        trace_m: section.optional_range("trace", TRACE),
+        diameter_m: section.optional_range("diameter", DIAMETER),
+        resistance_ohm: section.optional_range("resistance", RESISTANCE),
+        reactance: section.required_range("reactance", REACTANCE),
+        dead_time: section.required_range("dead_time", DEAD_TIME),
+        stages: section.required_range("stages", STAGES),
     }
-    let line = entry.line();
-    let t = entry.table()?;
-    let side = |key: &str| match t.find(key) {
-        Some(e) => e.measured(dimension, s).map(Some),
-        None => Some(None),
-    };
-    let (at_least, at_most) = (side("at_least"), side("at_most"));
-    t.refuse_others();
-    let bounds = Bounds {
-        at_least: at_least?,
-        at_most: at_most?,
-    };
-    if let (Some(low), Some(high)) = (bounds.at_least, bounds.at_most)
-        && low >= high
-    {
-        t.refuse_order(line);
-        return None;
+}
+
+fn read_limits(section: &Section<'_, '_>) -> Limits {
+    let harmonic = quantity(Dimension::Carrier, within(-200.0, 0.0));
+    let power = quantity(Dimension::Power, within(1e-12, 1e3));
+    let area = quantity(Dimension::Area, above(0.0, 1e-2));
+    Limits {
+        edge_time: section.optional("edge_time", number(above(0.0, 0.5))),
+        second_harmonic_dbc: section.optional("second_harmonic", harmonic),
+        third_harmonic_dbc: section.optional("third_harmonic", harmonic),
+        overdrive_use: section.optional("overdrive_use", number(above(0.0, 10.0))),
+        output_power_w: section.bounds("output_power", power),
+        area_m2: section.bounds("area", area),
+        efficiency: section.bounds("efficiency", number(within(0.0, 1.0))),
     }
-    Some(bounds)
 }
 
-fn limits(t: &Table<'_, '_>) -> Option<Limits> {
-    let plain = |key: &str, dimension: Option<Dimension>, s: Span| match t.find(key) {
-        Some(e) => e.measured(dimension, s).map(Some),
-        None => Some(None),
-    };
-    let edge_time = plain("edge_time", None, FRACTION);
-    let second = plain("second_harmonic", Some(Dimension::Carrier), HARMONIC);
-    let third = plain("third_harmonic", Some(Dimension::Carrier), HARMONIC);
-    let overdrive_use = plain("overdrive_use", None, FRACTION);
-    let output_power_w = bounds(t, "output_power", Some(Dimension::Power), POWER);
-    let area_m2 = bounds(t, "area", Some(Dimension::Area), AREA);
-    let efficiency = bounds(t, "efficiency", None, FRACTION);
-    t.refuse_others();
-    Some(Limits {
-        edge_time: edge_time?,
-        second_harmonic_dbc: second?,
-        third_harmonic_dbc: third?,
-        overdrive_use: overdrive_use?,
-        output_power_w: output_power_w?,
-        area_m2: area_m2?,
-        efficiency: efficiency?,
-    })
-}
-
-fn search(t: Option<&Table<'_, '_>>) -> Option<SearchSettings> {
-    let all = [
+fn search(section: Option<&Section<'_, '_>>) -> SearchSettings {
+    let names = [
         ("efficiency", Objective::Efficiency),
         ("output_power", Objective::OutputPower),
         ("area", Objective::Area),
     ];
-    let mut settings = SearchSettings {
-        objectives: all.iter().map(|c| c.1).collect(),
-        seed: 1,
-    };
-    let Some(t) = t else {
-        return Some(settings);
-    };
-    let mut sound = true;
-    if let Some(entry) = t.find("objectives") {
-        let mut objectives = Vec::new();
-        for item in entry.list() {
-            match item.choice(&all) {
-                Some(o) if objectives.contains(&o) => {
-                    item.refuse("each objective once", None);
-                    sound = false;
-                }
-                Some(o) => objectives.push(o),
-                None => sound = false,
+    let objectives = section.and_then(|section| section.choices("objectives", &names));
+    let seed = section.and_then(|section| section.optional("seed", whole(0, u32::MAX)));
+    SearchSettings {
+        objectives: objectives.unwrap_or(names.map(|(_, objective)| objective).to_vec()),
+        seed: seed.unwrap_or(f64::from(DEFAULT_SEED)) as u64,
+    }
+}
+
+fn design(section: &Section<'_, '_>) -> Design {
+    Design {
+        supply_v: section.required("supply", SUPPLY),
+        loaded_q: section.required("loaded_q", LOADED_Q),
+        nmos_width_m: section.required("nmos_width", NMOS_WIDTH),
+        width_ratio: section.required("width_ratio", WIDTH_RATIO),
+        turns: section.optional("turns", TURNS).map(|turns| turns as u32),
+        trace_m: section.optional("trace", TRACE),
+        diameter_m: section.optional("diameter", DIAMETER),
+        resistance_ohm: section.optional("resistance", RESISTANCE),
+        reactance: section.required("reactance", REACTANCE),
+        dead_time: section.required("dead_time", DEAD_TIME),
+        stages: section.required("stages", STAGES) as u32,
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use proptest::prelude::*;
+
+    const STUDY: &str = include_str!("../../tests/studies/good/plain.toml");
+
+    fn read(text: &str) -> Result<StudyFile, Faults> {
+        read_str(text, Path::new("a.toml"))
+    }
+
+    #[test]
+    fn law_what_is_written_is_what_is_resolved() {
+        let study = read(STUDY).unwrap().study;
+        assert_eq!(study.title, "Frost sensor");
+        assert_eq!(study.frequency_hz, 2.45e9);
+        assert_eq!(study.temperature_k, DEFAULT_TEMPERATURE_K);
+        assert_eq!(study.antenna_loss_db, 0.0);
+        assert_eq!(study.stage.network, Network::LowPass);
+        assert_eq!(study.driver.input_capacitance_f, 20e-15);
+        assert_eq!(study.driver.swing, Swing::Supply);
+        let objectives = [Objective::Efficiency, Objective::Area];
+        assert_eq!(study.search.objectives, objectives);
+        assert_eq!(study.search.seed, 7);
+        assert_eq!(study.limits.edge_time, Some(0.12));
+        assert_eq!(study.limits.output_power_w.at_most, None);
+        let space = study.space.unwrap();
+        assert_eq!(space.supply_v, Range::Grid(vec![0.8, 0.9, 1.0, 1.1, 1.2]));
+        let free = Range::Free {
+            from: 5e-5,
+            to: 4e-3,
+        };
+        assert_eq!(space.nmos_width_m, free);
+        assert_eq!(space.width_ratio, Range::Fixed(2.0));
+        let turns = Range::Grid(vec![1.0, 2.0, 3.0, 4.0, 5.0]);
+        assert_eq!(space.turns, Some(turns));
+        let design = study.design.unwrap();
+        assert_eq!((design.turns, design.trace_m), (Some(2), Some(1.5e-5)));
+    }
+
+    #[test]
+    fn law_grids_rise_evenly_and_keep_both_ends() {
+        for steps in 2..=60 {
+            let grid = format!("steps = {steps} }}\nloaded_q");
+            let study = read(&STUDY.replacen("steps = 5 }\nloaded_q", &grid, 1)).unwrap();
+            let Some(Range::Grid(values)) = study.study.space.map(|space| space.supply_v) else {
+                panic!("no grid of {steps}");
+            };
+            assert_eq!(values.len(), steps);
+            assert_eq!((values[0], values[steps - 1]), (0.8, 1.2));
+            assert!(values.is_sorted_by(|one, next| one < next));
+        }
+    }
+
+    #[test]
+    fn law_the_technology_lies_in_the_study_s_folder() {
+        let file = read_str(STUDY, Path::new("jobs/frost/a.toml")).unwrap();
+        let expected = "jobs/frost/../../../configs/technology/demo55.toml";
+        assert_eq!(file.study.technology, Path::new(expected));
+    }
+
+    /// Faults that cannot be told must not be made up either: each names its file.
+    fn faults_name_the_file(text: &str) -> Result<(), TestCaseError> {
+        if let Err(faults) = read(text) {
+            prop_assert!(faults.iter().count() > 0);
+            for fault in faults.iter() {
+                prop_assert!(fault.to_string().starts_with("a.toml"), "{fault}");
             }
         }
-        if objectives.is_empty() && sound {
-            entry.refuse("one to three objectives", None);
-            sound = false;
-        }
-        settings.objectives = objectives;
+        Ok(())
     }
-    if let Some(entry) = t.find("seed") {
-        match entry.whole(0, i64::MAX) {
-            Some(seed) => settings.seed = seed as u64,
-            None => sound = false,
-        }
-    }
-    t.refuse_others();
-    sound.then_some(settings)
-}
 
-fn design(t: &Table<'_, '_>) -> Option<Design> {
-    let needed = |v: &VariableKey| t.need(v.key, v.span.text).and_then(|e| value(&e, v));
-    let optional = |v: &VariableKey| match t.find(v.key) {
-        Some(e) => value(&e, v).map(Some),
-        None => Some(None),
-    };
-    let supply_v = needed(&SUPPLY);
-    let loaded_q = needed(&LOADED_Q);
-    let nmos_width_m = needed(&NMOS_WIDTH);
-    let width_ratio = needed(&WIDTH_RATIO);
-    let turns = optional(&TURNS);
-    let trace_m = optional(&TRACE);
-    let diameter_m = optional(&DIAMETER);
-    let resistance_ohm = optional(&RESISTANCE);
-    let reactance = needed(&REACTANCE);
-    let dead_time = needed(&DEAD_TIME);
-    let stages = needed(&STAGES);
-    t.refuse_others();
-    Some(Design {
-        supply_v: supply_v?,
-        loaded_q: loaded_q?,
-        nmos_width_m: nmos_width_m?,
-        width_ratio: width_ratio?,
-        turns: turns?.map(|v| v as u32),
-        trace_m: trace_m?,
-        diameter_m: diameter_m?,
-        resistance_ohm: resistance_ohm?,
-        reactance: reactance?,
-        dead_time: dead_time?,
-        stages: stages? as u32,
-    })
-}
+    proptest! {
+        #[test]
+        fn law_no_text_breaks_the_reader(text in ".{0,200}") {
+            faults_name_the_file(&text)?;
+            faults_name_the_file(&format!("schema = 1\n{text}"))?;
+        }
 
-/// Changes one value of `[design]` by `KEY=VALUE`, the value as the file would hold it, quotes not needed.
-///
-/// # Errors
-/// A fault that names the key or the value.
-pub fn set_design(file: &mut StudyFile, assignment: &str) -> Result<(), Faults> {
-    let fault = |key: &str, read: String, allowed: String, help| {
-        Faults::from(Fault {
-            file: "--set".into(),
-            line: None,
-            key: key.into(),
-            read,
-            allowed,
-            help,
-        })
-    };
-    let keys = || DESIGN_KEYS.iter().map(|v| v.key);
-    let Some((key, text)) = assignment.split_once('=') else {
-        return Err(fault(
-            "",
-            format!("{assignment:?}"),
-            "KEY=VALUE, for example supply=1.0V".into(),
-            None,
-        ));
-    };
-    let (key, text) = (key.trim(), text.trim().trim_matches('"'));
-    let Some(variable) = DESIGN_KEYS.iter().find(|v| v.key == key) else {
-        return Err(fault(
-            "",
-            format!("the unknown key {key:?}"),
-            one_of(keys()),
-            nearest(key, keys()),
-        ));
-    };
-    let Some(design) = &mut file.study.design else {
-        return Err(fault(
-            key,
-            "a study without [design]".into(),
-            "a study with [design]".into(),
-            Some(format!("add [design] to {}", file.path.display())),
-        ));
-    };
-    let literal = match variable.dimension {
-        Some(_) => format!("{text:?}"),
-        None => text.to_owned(),
-    };
-    let toml = format!("{key} = {literal}\n");
-    let reader = Reader::new("--set".into(), &toml);
-    let parsed = reader
-        .parse()
-        .map_err(|_| fault(key, format!("{text:?}"), variable.span.text.into(), None))?;
-    let found = reader
-        .root(&parsed)
-        .find(key)
-        .and_then(|e| value(&e, variable));
-    reader.finish().map_err(|mut faults| {
-        faults.0.iter_mut().for_each(|f| f.line = None);
-        faults
-    })?;
-    let Some(v) = found else {
-        return Err(fault(
-            key,
-            format!("{text:?}"),
-            variable.span.text.into(),
-            None,
-        ));
-    };
-    match key {
-        "supply" => design.supply_v = v,
-        "loaded_q" => design.loaded_q = v,
-        "nmos_width" => design.nmos_width_m = v,
-        "width_ratio" => design.width_ratio = v,
-        "turns" => design.turns = Some(v as u32),
-        "trace" => design.trace_m = Some(v),
-        "diameter" => design.diameter_m = Some(v),
-        "resistance" => design.resistance_ohm = Some(v),
-        "reactance" => design.reactance = v,
-        "dead_time" => design.dead_time = v,
-        _ => design.stages = v as u32,
+        #[test]
+        fn law_no_change_of_a_good_study_breaks_the_reader(
+            cut in 0..STUDY.len(), length in 0usize..30, put in "[-a-z0-9.\"={}\\[\\] \n\u{b5}]{0,12}"
+        ) {
+            let mut text = STUDY.to_owned();
+            text.replace_range(cut..(cut + length).min(STUDY.len()), &put);
+            faults_name_the_file(&text)?;
+        }
     }
-    Ok(())
 }
