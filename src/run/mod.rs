@@ -1,0 +1,3 @@
+//! Run folders: records, writing, reading, going on.
+
+pub mod records;
