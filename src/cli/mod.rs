@@ -40,6 +40,8 @@ enum Command {
     },
     /// Search every cell of loaded Q and supply for its Pareto front; write a run folder.
     Search(search::SearchArguments),
+    /// Make one run folder of the parts of a run.
+    Join(search::JoinArguments),
 }
 
 /// Why a command did not succeed.
@@ -63,6 +65,7 @@ pub fn run() -> ExitCode {
         Command::Check { study } => check::run(&study),
         Command::Evaluate { study, set, json } => evaluate::run(&study, &set, json),
         Command::Search(arguments) => search::run(&arguments),
+        Command::Join(arguments) => search::join(&arguments),
     };
     match result {
         Ok(()) => ExitCode::SUCCESS,

@@ -364,3 +364,21 @@ fn solve_coil(
         }
     }
 }
+
+impl From<&DesignValues> for Design {
+    fn from(v: &DesignValues) -> Self {
+        Self {
+            supply_v: v.supply_v,
+            loaded_q: v.loaded_q,
+            nmos_width_m: v.nmos_width_m,
+            width_ratio: v.width_ratio,
+            turns: v.turns,
+            trace_m: v.trace_m,
+            diameter_m: v.diameter_m,
+            resistance_ohm: v.resistance_ohm,
+            reactance: v.reactance,
+            dead_time: v.dead_time,
+            stages: v.stages,
+        }
+    }
+}

@@ -1,3 +1,84 @@
-//! Run folders: records, writing, reading, going on.
+//! Run folders: records, writing, reading, going on, joining.
 
+pub mod folder;
 pub mod records;
+pub mod session;
+pub mod summary;
+mod table;
+
+use serde::Serialize;
+use std::path::PathBuf;
+use thiserror::Error;
+
+/// What can go wrong with a run folder.
+#[derive(Debug, Error)]
+pub enum RunError {
+    /// The system refused.
+    #[error("{path}: {error}; what is finished is kept, --resume goes on from it", path = .path.display())]
+    Io {
+        /// File or folder.
+        path: PathBuf,
+        /// What it said.
+        error: std::io::Error,
+    },
+    /// Another search works in this folder.
+    #[error(
+        "{path}: another search is writing this run; wait for it, or choose another folder with --out",
+        path = .0.display()
+    )]
+    Busy(PathBuf),
+    /// A run is there already.
+    #[error(
+        "{path}: holds a run already; --resume goes on with it, --out chooses another folder",
+        path = .0.display()
+    )]
+    Exists(PathBuf),
+    /// The folder holds something else.
+    #[error(
+        "{path}: is not empty and holds no run; choose another folder with --out",
+        path = .0.display()
+    )]
+    NotARun(PathBuf),
+    /// A file of the run cannot be read as what it should be.
+    #[error("{path}: {reason}", path = .path.display())]
+    Damaged {
+        /// File.
+        path: PathBuf,
+        /// Why.
+        reason: String,
+    },
+    /// The folder's run is of another study, technology, program or part.
+    #[error("{path}: this run is of {differences}; resume it with what it was started with, or choose another folder", path = .path.display())]
+    Different {
+        /// Folder.
+        path: PathBuf,
+        /// What differs, in words.
+        differences: String,
+    },
+    /// Parts do not make a whole.
+    #[error("{0}")]
+    Parts(String),
+    /// The study has no design space.
+    #[error("the study has no [space]; a search needs one")]
+    NoSpace,
+    /// Stopped by a signal.
+    #[error("stopped; {finished} of {cells} cells are kept in {path}, --resume goes on", path = .path.display())]
+    Stopped {
+        /// Folder.
+        path: PathBuf,
+        /// Cells finished.
+        finished: usize,
+        /// Cells in all.
+        cells: usize,
+    },
+    /// Nothing found.
+    #[error("no feasible design in any cell; widen [space] or loosen [limits]")]
+    NothingFeasible,
+}
+
+/// blake3 of a value's JSON.
+pub(crate) fn digest<T: Serialize>(value: &T) -> Result<String, serde_json::Error> {
+    Ok(blake3::hash(&serde_json::to_vec(value)?)
+        .to_hex()
+        .to_string())
+}

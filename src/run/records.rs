@@ -99,6 +99,8 @@ pub struct RunRecord {
     pub started_unix_s: u64,
     /// Seconds since 1970 at its end; none while it runs.
     pub ended_unix_s: Option<u64>,
+    /// The share of the cells this folder holds, `3/16`; none for all of them.
+    pub part: Option<String>,
     /// Cells of the study.
     pub cells: usize,
     /// Cells finished.

@@ -13,6 +13,7 @@ use super::space::{Cell, Slice, slices};
 use crate::evaluate::{Evaluation, evaluate};
 use crate::study::Objective;
 use argmin::core::Executor;
+use std::sync::atomic::{AtomicBool, Ordering};
 
 /// Levels of a traced front along output power and along area.
 const LEVELS: usize = 14;
@@ -61,17 +62,19 @@ struct Solved {
     merits: [f64; 3],
 }
 
-/// Searches one cell.
-pub fn search_cell(context: &Context<'_>, cell: &Cell) -> CellFront {
+/// Searches one cell; `None` when `stop` was raised before it was done.
+pub fn search_cell(context: &Context<'_>, cell: &Cell, stop: &AtomicBool) -> Option<CellFront> {
     let slices = slices(context.space, cell);
     let mut tracer = Tracer {
         context,
         slices: &slices,
         evaluations: 0,
         found: Vec::new(),
+        stop,
     };
     tracer.run(cell);
-    tracer.front(cell)
+    let front = tracer.front(cell);
+    (!stop.load(Ordering::Relaxed)).then_some(front)
 }
 
 struct Tracer<'a> {
@@ -79,6 +82,7 @@ struct Tracer<'a> {
     slices: &'a [Slice],
     evaluations: u64,
     found: Vec<Solved>,
+    stop: &'a AtomicBool,
 }
 
 /// The corners of a slice's front.
@@ -134,6 +138,9 @@ impl Tracer<'_> {
         point: Row,
         curvature: &Curvature,
     ) -> Option<Solved> {
+        if self.stop.load(Ordering::Relaxed) {
+            return None;
+        }
         let problem = self.problem(slice, goal)?;
         let solver = SequentialQuadratic::new(point, *curvature, RESIDUAL);
         let result = Executor::new(problem, solver)
@@ -300,6 +307,9 @@ impl Tracer<'_> {
         let kept_costs: Vec<Costs> = kept.iter().map(|&i| all[i]).collect();
         let mut points: Vec<FrontPoint> = Vec::new();
         for at in spread(&kept_costs, SPACING) {
+            if self.stop.load(Ordering::Relaxed) {
+                break;
+            }
             let solved = &self.found[kept[at]];
             let slice = &self.slices[solved.slice];
             let design = slice.design(&solved.point[..slice.axes.len()]);

@@ -1,0 +1,190 @@
+//! What is made of finished cells: the overall front, the table of cells, the spread of residuals.
+//!
+//! Cells are read one at a time, so a run of many cells takes no more memory than its front.
+
+use super::RunError;
+use super::folder::{RunFolder, read_cell};
+use super::records::{CellRecord, DesignList, DesignRecord, HypervolumeReference, Residuals};
+use super::table::csv;
+use crate::numerics::hypervolume::hypervolume;
+use crate::search::front::{Costs, costs, non_dominated};
+use crate::study::Objective;
+use serde::Serialize;
+
+/// Square millimetres in a square metre: the unit of area in a hypervolume.
+const MM2: f64 = 1e6;
+
+/// A line of `cells.csv`.
+#[derive(Debug, Clone, Serialize)]
+struct CellLine {
+    cell: usize,
+    loaded_q: Option<f64>,
+    supply_v: Option<f64>,
+    best_efficiency: Option<f64>,
+    least_output_power_dbm: Option<f64>,
+    most_output_power_dbm: Option<f64>,
+    least_area_m2: Option<f64>,
+    front_size: usize,
+    hypervolume: f64,
+    evaluations: u64,
+}
+
+/// What all finished cells amount to.
+#[derive(Debug, Clone)]
+pub struct Summary {
+    /// The overall front, best efficiency first.
+    pub front: Vec<DesignRecord>,
+    /// Cells found finished.
+    pub finished: usize,
+    /// Assessments of these.
+    pub evaluations: u64,
+    /// Hypervolume of the overall front.
+    pub hypervolume: f64,
+    /// Spread of the residuals of all cells' points.
+    pub residuals: Option<Residuals>,
+}
+
+/// Costs of a record by the objectives in play.
+pub fn record_costs(objectives: &[Objective], design: &DesignRecord) -> Costs {
+    design
+        .evaluation
+        .figures
+        .as_ref()
+        .map_or([f64::INFINITY; 3], |f| {
+            costs(objectives, f.efficiency, f.output_power_w, f.area_m2)
+        })
+}
+
+/// Hypervolume of a front: efficiency × W × mm² below `reference`; an objective not traded counts as one.
+pub fn front_hypervolume(
+    objectives: &[Objective],
+    reference: &HypervolumeReference,
+    front: &[DesignRecord],
+) -> f64 {
+    let traded = |o| objectives.contains(&o);
+    let points: Vec<[f64; 3]> = front
+        .iter()
+        .map(|d| {
+            let [efficiency, power, area] = record_costs(objectives, d);
+            [
+                if traded(Objective::Efficiency) {
+                    efficiency
+                } else {
+                    -1.0
+                },
+                if traded(Objective::OutputPower) {
+                    power
+                } else {
+                    -1.0
+                },
+                if traded(Objective::Area) {
+                    area * MM2
+                } else {
+                    reference.area_m2 * MM2 - 1.0
+                },
+            ]
+        })
+        .collect();
+    hypervolume(&points, &[0.0, 0.0, reference.area_m2 * MM2])
+}
+
+/// Reads every cell of `cells`, in order, writes `cells.csv`, `front.csv` and `front.json`.
+///
+/// # Errors
+/// A damaged cell, or the system's.
+pub fn summarise(
+    folder: &RunFolder,
+    cells: impl Iterator<Item = usize>,
+    objectives: &[Objective],
+    reference: &HypervolumeReference,
+) -> Result<Summary, RunError> {
+    /// Designs gathered before the front is filtered anew.
+    const BATCH: usize = 20_000;
+    let mut front: Vec<DesignRecord> = Vec::new();
+    let mut lines = Vec::new();
+    let mut residuals = Vec::new();
+    let mut evaluations = 0;
+    for cell in cells {
+        let Some(record) = read_cell(folder.path(), cell)? else {
+            continue;
+        };
+        evaluations += record.evaluations;
+        residuals.extend(record.designs.iter().map(|d| (d.residual, d.certified)));
+        lines.push(line(&record));
+        front.extend(record.designs);
+        if front.len() > BATCH {
+            front = filtered(objectives, front);
+        }
+    }
+    let mut front = filtered(objectives, front);
+    front.sort_by(|a, b| {
+        let (x, y) = (record_costs(objectives, a), record_costs(objectives, b));
+        (x[0].total_cmp(&y[0]))
+            .then(x[1].total_cmp(&y[1]))
+            .then(x[2].total_cmp(&y[2]))
+            .then(a.id.cmp(&b.id))
+    });
+    let path = folder.path();
+    folder.write("cells.csv", &csv(&path.join("cells.csv"), &lines)?)?;
+    folder.write("front.csv", &csv(&path.join("front.csv"), &front)?)?;
+    let list = DesignList { designs: front };
+    folder.write_json("front.json", &list)?;
+    let front = list.designs;
+    Ok(Summary {
+        hypervolume: front_hypervolume(objectives, reference, &front),
+        front,
+        finished: lines.len(),
+        evaluations,
+        residuals: spread_of(residuals),
+    })
+}
+
+fn filtered(objectives: &[Objective], designs: Vec<DesignRecord>) -> Vec<DesignRecord> {
+    let all: Vec<Costs> = designs
+        .iter()
+        .map(|d| record_costs(objectives, d))
+        .collect();
+    let mut keep = vec![false; designs.len()];
+    for index in non_dominated(&all) {
+        keep[index] = true;
+    }
+    let mut marks = keep.into_iter();
+    designs
+        .into_iter()
+        .filter(|_| marks.next().unwrap_or(false))
+        .collect()
+}
+
+fn line(record: &CellRecord) -> CellLine {
+    let figures = || {
+        record
+            .designs
+            .iter()
+            .filter_map(|d| d.evaluation.figures.as_ref())
+    };
+    CellLine {
+        cell: record.cell,
+        loaded_q: record.loaded_q,
+        supply_v: record.supply_v,
+        best_efficiency: figures().map(|f| f.efficiency).reduce(f64::max),
+        least_output_power_dbm: figures().map(|f| f.output_power_dbm).reduce(f64::min),
+        most_output_power_dbm: figures().map(|f| f.output_power_dbm).reduce(f64::max),
+        least_area_m2: figures().map(|f| f.area_m2).reduce(f64::min),
+        front_size: record.designs.len(),
+        hypervolume: record.hypervolume,
+        evaluations: record.evaluations,
+    }
+}
+
+fn spread_of(mut residuals: Vec<(f64, bool)>) -> Option<Residuals> {
+    residuals.sort_by(|a, b| a.0.total_cmp(&b.0));
+    let last = residuals.len().checked_sub(1)?;
+    let at = |share: f64| residuals[(share * last as f64).round() as usize].0;
+    Some(Residuals {
+        points: residuals.len(),
+        certified: residuals.iter().filter(|r| r.1).count(),
+        median: at(0.5),
+        percentile_99: at(0.99),
+        worst: at(1.0),
+    })
+}
