@@ -62,7 +62,8 @@ impl<'a> Context<'a> {
         }
     }
 
-    fn coil_source(&self, turns: Option<u32>) -> Option<CoilSource<'_>> {
+    /// The inductor of a slice with these turns; `None` when no such spiral closes.
+    pub fn coil_source(&self, turns: Option<u32>) -> Option<CoilSource<'_>> {
         let table = turns.and_then(|n| self.tables.get(&n));
         SliceProblem::coil_source(&self.setup.inductor, table, turns)
     }

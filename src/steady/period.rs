@@ -7,7 +7,9 @@
 use super::circuit::{Circuit, Switches};
 use super::rails::{self, DeadTimeSpan};
 use crate::numerics::complex::Complex;
-use crate::numerics::matrix::{Column, Exponential, Matrix, apply, identity, product, solve};
+use crate::numerics::matrix::{
+    Column, Exponential, Matrix, advanced, apply, identity, product, solve,
+};
 use crate::numerics::scalar::Scalar;
 use std::f64::consts::TAU;
 
@@ -92,7 +94,7 @@ impl<S: Scalar, const N: usize> Solved<S, N> {
         for &(switches, duration_s, map) in &sequence {
             let rest: Column<S, N> = circuit.rest(switches);
             let from_rest = difference(&state, &rest);
-            let to_rest = apply(exponentials[map].whole(), &from_rest);
+            let to_rest = advanced(exponentials[map].less_identity(), &from_rest);
             state = total(&to_rest, &rest);
             phases.push(Phase {
                 switches,
@@ -133,13 +135,19 @@ fn start_state<S: Scalar, const N: usize>(
     sequence: &[(Switches, S, usize)],
     exponentials: &[Exponential<S, N>],
 ) -> Option<Column<S, N>> {
-    let mut map: Option<Matrix<S, N>> = None;
+    let mut map: Matrix<S, N> = identity();
     let mut offset = [S::zero(); N];
     for &(switches, _, index) in sequence {
-        let e = exponentials[index].whole();
+        let f = exponentials[index].less_identity();
         let rest: Column<S, N> = circuit.rest(switches);
-        offset = total(&apply(e, &difference(&offset, &rest)), &rest);
-        map = Some(map.map_or(*e, |m| product(e, &m)));
+        offset = total(&apply(f, &difference(&offset, &rest)), &offset);
+        let mut next = product(f, &map);
+        for i in 0..N {
+            for j in 0..N {
+                next[i][j] += map[i][j];
+            }
+        }
+        map = next;
     }
     let mut mirror = identity();
     if circuit.legs == 2 {
@@ -148,7 +156,6 @@ fn start_state<S: Scalar, const N: usize>(
             row[i] = S::constant(-1.0);
         }
     }
-    let map = map?;
     for i in 0..N {
         for j in 0..N {
             mirror[i][j] -= map[i][j];

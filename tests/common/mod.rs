@@ -5,9 +5,7 @@ use std::path::PathBuf;
 use widefront::study::{
     Design, DriverChoice, Limits, Network, Objective, SearchSettings, StageChoice, Study, Swing,
 };
-use widefront::technology::{
-    Capacitor, Inductor, Layout, Technology, Transistor, TransistorPair,
-};
+use widefront::technology::{Capacitor, Inductor, Layout, Technology, Transistor, TransistorPair};
 
 /// A technology whose transistors are nothing but resistance and whose passives are lossless: limits are recovered on it.
 pub fn ideal_technology() -> Technology {
@@ -20,7 +18,7 @@ pub fn ideal_technology() -> Technology {
         slope: 1.0,
         degradation_per_v: 0.0,
         mobility_exponent: 0.0,
-        access_resistance_ohm_m: 1e-12,
+        access_resistance_ohm_m: 1e-11,
         gate_capacitance_f_m: 1e-22,
         overlap_capacitance_f_m: 0.0,
         junction_capacitance_f_m: 1e-15,

@@ -1,0 +1,186 @@
+//! Laws that every design obeys, over random designs of all kinds.
+
+mod common;
+
+use common::ideal_technology;
+use proptest::prelude::*;
+use widefront::evaluate::{Figures, Setup, evaluate};
+use widefront::study::{Design, Network, Study};
+use widefront::technology::{Inductor, Technology, Transistor};
+
+/// The energy balance: what the issue of this program asks for.
+const BALANCE: f64 = 1e-9;
+/// Exact relations left with the rounding of exponentials of large matrices.
+const EXACT: f64 = 1e-9;
+
+fn technology() -> Technology {
+    let mut technology = ideal_technology();
+    let transistor = |k: f64, access: f64| Transistor {
+        transconductance_a_v2: k,
+        length_m: 60e-9,
+        threshold_v: 0.35,
+        threshold_drift_v_k: -0.8e-3,
+        slope: 1.35,
+        degradation_per_v: 0.5,
+        mobility_exponent: -1.3,
+        access_resistance_ohm_m: access,
+        gate_capacitance_f_m: 0.95e-9,
+        overlap_capacitance_f_m: 0.28e-9,
+        junction_capacitance_f_m: 0.65e-9,
+        junction_grading: 0.4,
+        junction_potential_v: 0.8,
+        off_current_a_m: 20e-3,
+    };
+    let pair = technology.transistors.get_mut("core").unwrap();
+    pair.nmos = transistor(280e-6, 200e-6);
+    pair.pmos = transistor(100e-6, 450e-6);
+    technology.inductor = Inductor::Fixed {
+        quality: 12.0,
+        area_base_m2: 1e-8,
+        area_slope_m2_h: 30.0,
+    };
+    technology.capacitor.quality = 60.0;
+    technology.capacitor.bottom_plate = 0.01;
+    technology.layout.routing_resistance_ohm = 0.02;
+    technology
+}
+
+fn study(legs: u32, stack: u32, network: Network) -> Study {
+    let mut study = common::direct_study();
+    study.frequency_hz = 2.45e9;
+    study.antenna_loss_db = 0.3;
+    study.stage.legs = legs;
+    study.stage.stack = stack;
+    study.stage.network = network;
+    study.driver.input_capacitance_f = 20e-15;
+    study.driver.ratio = 2.0;
+    study.driver.crowbar = 0.05;
+    study
+}
+
+fn random_design() -> impl Strategy<Value = (u32, u32, bool, Design)> {
+    (
+        (1u32..=2, 1u32..=2, any::<bool>()),
+        (0.8..1.3f64, 1.5..8.0f64, 50e-6..4e-3f64, 0.5..3.5f64),
+        (
+            2.0..30.0f64,
+            0.0..1.2f64,
+            prop_oneof![Just(0.0), 0.0..0.2f64],
+            1u32..=7,
+        ),
+    )
+        .prop_map(
+            |((legs, stack, direct), (v, loaded_q, width, ratio), (ohm, x, dead, stages))| {
+                let design = Design {
+                    supply_v: v * f64::from(stack),
+                    loaded_q,
+                    nmos_width_m: width,
+                    width_ratio: ratio,
+                    turns: None,
+                    trace_m: None,
+                    diameter_m: None,
+                    resistance_ohm: (!direct).then_some(ohm),
+                    reactance: x.min(0.5 * loaded_q),
+                    dead_time: dead,
+                    stages,
+                };
+                (legs, stack, direct, design)
+            },
+        )
+}
+
+fn kind(direct: bool) -> Network {
+    if direct {
+        Network::Direct
+    } else {
+        Network::LowPass
+    }
+}
+
+fn found(study: &Study, technology: &Technology, design: &Design) -> Option<Figures> {
+    evaluate(&Setup::new(study, technology).unwrap(), design).figures
+}
+
+proptest! {
+    #![proptest_config(ProptestConfig::with_cases(400))]
+
+    /// P_dc is what the parts dissipate and the antenna gets; the switches' share is integrated on its own.
+    #[test]
+    fn law_energy_balances((legs, stack, direct, design) in random_design()) {
+        let Some(f) = found(&study(legs, stack, kind(direct)), &technology(), &design) else {
+            return Ok(());
+        };
+        let l = &f.losses_w;
+        let carrier = f.output_power_w + l.balun;
+        let dissipated = l.conduction + l.drain_charge + l.inductor + l.capacitor;
+        let balance = f.dc_power_w - (dissipated + l.harmonics + carrier);
+        prop_assert!(balance.abs() < BALANCE * f.dc_power_w, "{} of {}", balance, f.dc_power_w);
+        let total = f.total_power_w - f.output_power_w - l.total();
+        prop_assert!(total.abs() < BALANCE * f.total_power_w);
+    }
+
+    /// All impedances times a, all widths over a: the same efficiency, a-th of the power. The driver scales with its
+    /// input capacitance, the route with the resistances.
+    #[test]
+    fn law_impedance_scaling((legs, stack, direct, design) in random_design(), a in 0.3..3.0f64) {
+        let (study, technology) = (study(legs, stack, kind(direct)), technology());
+        let Some(f) = found(&study, &technology, &design) else {
+            return Ok(());
+        };
+        let mut scaled_study = study.clone();
+        scaled_study.antenna_resistance_ohm *= a;
+        scaled_study.driver.input_capacitance_f /= a;
+        let mut scaled_technology = technology.clone();
+        scaled_technology.layout.routing_resistance_ohm *= a;
+        let scaled_design = Design {
+            nmos_width_m: design.nmos_width_m / a,
+            resistance_ohm: design.resistance_ohm.map(|r| r * a),
+            ..design
+        };
+        let g = found(&scaled_study, &scaled_technology, &scaled_design).unwrap();
+        prop_assert!((g.efficiency / f.efficiency - 1.0).abs() < EXACT);
+        prop_assert!((g.output_power_w * a / f.output_power_w - 1.0).abs() < EXACT);
+    }
+
+    /// A dead time that vanishes changes nothing by vanishing.
+    #[test]
+    fn law_dead_time_is_continuous_at_zero((legs, stack, direct, design) in random_design()) {
+        let (study, technology) = (study(legs, stack, kind(direct)), technology());
+        let with = |dead_time: f64| found(&study, &technology, &Design { dead_time, ..design.clone() });
+        let (Some(none), Some(hair)) = (with(0.0), with(1e-9)) else {
+            return Ok(());
+        };
+        prop_assert!((hair.efficiency / none.efficiency - 1.0).abs() < 1e-6);
+        prop_assert!((hair.output_power_w / none.output_power_w - 1.0).abs() < 1e-6);
+    }
+
+    /// Two legs, differential on twice the antenna, are two single legs: twice the power, the same efficiency, as far as
+    /// the odd harmonics go; so with a tuned high-Q loop.
+    #[test]
+    fn law_two_legs_are_one_leg_doubled(v in 0.9..1.3f64, width in 1e-4..2e-3f64, dead in 0.0..0.1f64) {
+        let technology = technology();
+        let one_study = study(1, 1, Network::Direct);
+        let mut two_study = study(2, 1, Network::Direct);
+        two_study.antenna_resistance_ohm *= 2.0;
+        let design = Design {
+            supply_v: v,
+            loaded_q: 400.0,
+            nmos_width_m: width,
+            // Equal resistances: without it the single leg has even harmonics that the pair has not.
+            width_ratio: 1.0,
+            reactance: 0.5,
+            dead_time: dead,
+            ..common::direct_design()
+        };
+        let mut technology = technology;
+        let pair = technology.transistors.get_mut("core").unwrap();
+        pair.pmos = pair.nmos.clone();
+        let design = Design { stages: 4, ..design };
+        technology.inductor = Inductor::Fixed { quality: 1e5, area_base_m2: 1e-8, area_slope_m2_h: 30.0 };
+        let one = found(&one_study, &technology, &design).unwrap();
+        let two = found(&two_study, &technology, &design).unwrap();
+        // Harmonics of order 1/Q² are what is left between them.
+        prop_assert!((two.efficiency / one.efficiency - 1.0).abs() < 1e-4);
+        prop_assert!((two.output_power_w / (2.0 * one.output_power_w) - 1.0).abs() < 1e-4);
+    }
+}
