@@ -112,8 +112,18 @@ pub struct Exponential<S, const N: usize> {
 }
 
 impl<S: Scalar, const N: usize> Exponential<S, N> {
+    /// Room for an exponential, to be filled in place: the halvings are too large to be moved about.
+    #[inline(always)]
+    pub fn empty() -> Self {
+        Self {
+            powers: ArrayVec::new(),
+            step: [[S::zero(); N]; N],
+        }
+    }
+
     /// The exponential of `x`; `None` when `x` is not finite or larger than can be halved.
-    pub fn of(x: &Matrix<S, N>) -> Option<Self> {
+    #[must_use]
+    pub fn fill(&mut self, x: &Matrix<S, N>) -> Option<()> {
         let norm = norm_one(x);
         if !norm.is_finite() {
             return None;
@@ -127,20 +137,46 @@ impl<S: Scalar, const N: usize> Exponential<S, N> {
             return None;
         }
         let scale = 0.5f64.powi(halvings as i32);
-        let step = x.map(|row| row.map(|entry| entry * scale));
-        let mut powers = ArrayVec::new();
-        powers.push(taylor(&step));
+        self.step = x.map(|row| row.map(|entry| entry * scale));
+        self.powers.clear();
+        self.powers.push(taylor(&self.step));
         for k in 0..halvings {
             // (1 + F)² − 1 = 2F + F²
-            let mut square = product(&powers[k], &powers[k]);
-            for (row, from) in square.iter_mut().zip(&powers[k]) {
+            let half = &self.powers[k];
+            let mut square = product(half, half);
+            for (row, from) in square.iter_mut().zip(half) {
                 for (entry, f) in row.iter_mut().zip(from) {
                     *entry += *f * 2.0;
                 }
             }
-            powers.push(square);
+            self.powers.push(square);
         }
-        Some(Self { powers, step })
+        Some(())
+    }
+
+    /// The same exponential without derivatives.
+    pub fn values(&self) -> Exponential<f64, N> {
+        let plain = |m: &Matrix<S, N>| m.map(|row| row.map(S::value));
+        let mut values = Exponential::empty();
+        values.powers.extend(self.powers.iter().map(plain));
+        values.step = plain(&self.step);
+        values
+    }
+
+    /// `e^{kx/8}·y` for k = 1..8, values only, handed to `visit` one after the other.
+    pub fn eighths(&self, y: &Column<S, N>, mut visit: impl FnMut(usize, &Column<f64, N>)) {
+        let mut at = y.map(S::value);
+        let eighth: Matrix<f64, N> = match self.halvings().checked_sub(3) {
+            Some(k) => self.powers[k].map(|row| row.map(S::value)),
+            None => {
+                let scale = 2f64.powi(self.halvings() as i32 - 3);
+                taylor(&self.step.map(|row| row.map(|entry| entry.value() * scale)))
+            }
+        };
+        for k in 1..8 {
+            at = advanced(&eighth, &at);
+            visit(k, &at);
+        }
     }
 
     /// `e^x − 1`.
@@ -300,6 +336,12 @@ mod tests {
     /// Rounding of a few dozen operations, grown by the squarings of the largest case (about 2^8).
     const TOLERANCE: f64 = 1e-12;
 
+    fn filled<S: Scalar, const N: usize>(x: &Matrix<S, N>) -> Option<Exponential<S, N>> {
+        let mut e = Exponential::empty();
+        e.fill(x)?;
+        Some(e)
+    }
+
     /// A damped rotation beside a fast decay: its exponential is known in closed form.
     fn damped(a: f64, b: f64, fast: f64) -> Matrix<f64, 3> {
         [[-a, -b, 0.0], [b, -a, 0.0], [0.0, 0.0, -fast]]
@@ -308,7 +350,7 @@ mod tests {
     #[test]
     fn law_exponential_of_a_damped_rotation() {
         for (a, b, fast) in [(0.1, 0.2, 0.01), (0.3, 3.0, 150.0), (2.0, 40.0, 3.0)] {
-            let e = Exponential::of(&damped(a, b, fast)).unwrap();
+            let e = filled(&damped(a, b, fast)).unwrap();
             let m = e.less_identity();
             let radius = (-a).exp();
             assert!((1.0 + m[0][0] - radius * b.cos()).abs() < TOLERANCE);
@@ -321,7 +363,7 @@ mod tests {
     fn law_a_slow_mode_survives_a_fast_neighbour() {
         // The fast mode asks for 40 squarings; the slow ones keep all but a few digits.
         let (a, b) = (1e-3, 2.0);
-        let e = Exponential::of(&damped(a, b, 3e11)).unwrap();
+        let e = filled(&damped(a, b, 3e11)).unwrap();
         let radius = (-a).exp();
         assert!((1.0 + e.less_identity()[0][0] - radius * b.cos()).abs() < TOLERANCE);
     }
@@ -329,7 +371,7 @@ mod tests {
     #[test]
     fn law_parts_and_second_moments_of_a_damped_rotation() {
         let (a, b, fast) = (0.3, 3.0, 150.0);
-        let e = Exponential::of(&damped(a, b, fast)).unwrap();
+        let e = filled(&damped(a, b, fast)).unwrap();
         let y = [1.0, 0.0, 2.0];
         for fraction in [0.0, 0.01, 0.37, 0.5, 0.999, 1.0] {
             let x = e.part(fraction, &y);
@@ -359,7 +401,7 @@ mod tests {
     fn law_exponential_carries_derivatives() {
         let at = |t: Dual<1>| {
             let zero = Dual::zero();
-            Exponential::of(&[[-t, zero], [t * 2.0, t]])
+            filled(&[[-t, zero], [t * 2.0, t]])
                 .map(|e| *e.less_identity())
                 .unwrap()
         };
@@ -370,8 +412,8 @@ mod tests {
 
     #[test]
     fn law_what_is_not_finite_is_refused() {
-        assert!(Exponential::of(&[[f64::NAN]]).is_none());
-        assert!(Exponential::of(&[[f64::INFINITY]]).is_none());
-        assert!(Exponential::of(&[[1e300]]).is_none());
+        assert!(filled(&[[f64::NAN]]).is_none());
+        assert!(filled(&[[f64::INFINITY]]).is_none());
+        assert!(filled(&[[1e300]]).is_none());
     }
 }

@@ -43,10 +43,10 @@ pub(super) struct Order {
 pub(super) enum Switches {
     /// One leg: P on. Two legs: P of leg 1 and N of leg 2 on.
     PullUp,
-    /// One leg: N on. Two legs: does not occur in the first half period.
-    PullDown,
     /// All off.
     Open,
+    /// One leg: N on. Two legs: does not occur in the first half period.
+    PullDown,
 }
 
 impl<S: Scalar> Circuit<S> {

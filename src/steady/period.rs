@@ -48,53 +48,61 @@ pub(super) struct Phase<S, const N: usize> {
     pub(super) from_rest: Column<S, N>,
     /// State less its rest at the end.
     pub(super) to_rest: Column<S, N>,
-    /// Which of [`Solved::exponentials`] maps it.
-    pub(super) map: usize,
+}
+
+/// Exponentials of the distinct phases: pull-up, open, pull-down.
+pub(super) type Maps<S, const N: usize> = [Exponential<S, N>; 3];
+
+/// Room for the exponentials of a solve.
+#[inline(always)]
+pub(super) fn maps<S: Scalar, const N: usize>() -> Maps<S, N> {
+    [
+        Exponential::empty(),
+        Exponential::empty(),
+        Exponential::empty(),
+    ]
 }
 
 /// Phases of a period (two legs: of its first half) in their steady state.
-pub(super) struct Solved<S, const N: usize> {
+pub(super) struct Solved<'m, S, const N: usize> {
     pub(super) phases: arrayvec::ArrayVec<Phase<S, N>, 4>,
-    exponentials: arrayvec::ArrayVec<Exponential<S, N>, 3>,
+    maps: &'m Maps<S, N>,
 }
 
-impl<S: Scalar, const N: usize> Solved<S, N> {
-    pub(super) fn exponential(&self, phase: &Phase<S, N>) -> &Exponential<S, N> {
-        &self.exponentials[phase.map]
+impl<'m, S: Scalar, const N: usize> Solved<'m, S, N> {
+    pub(super) fn exponential(&self, phase: &Phase<S, N>) -> &'m Exponential<S, N> {
+        &self.maps[phase.switches as usize]
     }
 
-    /// Solves the steady state; `None` when it leaves the floating-point range.
-    pub(super) fn new(circuit: &Circuit<S>) -> Option<Self> {
+    /// Solves the steady state in the room of `maps`; `None` when it leaves the floating-point range.
+    pub(super) fn new(circuit: &Circuit<S>, maps: &'m mut Maps<S, N>) -> Option<Self> {
         let on_s = (-circuit.dead_time + 0.5) * circuit.period_s;
         let open_s = circuit.dead_time * circuit.period_s;
         let has_dead_time = !circuit.dead_time.is_identically_zero();
-        let mut exponentials = arrayvec::ArrayVec::new();
-        let exponential = |switches, duration: S| {
-            let a: Matrix<S, N> = circuit.matrix(switches);
-            Exponential::of(&a.map(|row| row.map(|entry| entry * duration)))
-        };
-        let mut sequence = arrayvec::ArrayVec::<(Switches, S, usize), 4>::new();
-        exponentials.push(exponential(Switches::PullUp, on_s)?);
-        sequence.push((Switches::PullUp, on_s, 0));
+        let mut sequence = arrayvec::ArrayVec::<(Switches, S), 4>::new();
+        sequence.push((Switches::PullUp, on_s));
         if has_dead_time {
-            exponentials.push(exponential(Switches::Open, open_s)?);
-            sequence.push((Switches::Open, open_s, 1));
+            sequence.push((Switches::Open, open_s));
         }
         if circuit.legs == 1 {
-            let map = exponentials.len();
-            exponentials.push(exponential(Switches::PullDown, on_s)?);
-            sequence.push((Switches::PullDown, on_s, map));
+            sequence.push((Switches::PullDown, on_s));
             if has_dead_time {
-                sequence.push((Switches::Open, open_s, 1));
+                sequence.push((Switches::Open, open_s));
             }
         }
-        let mut state = start_state(circuit, &sequence, &exponentials)?;
+        let distinct = sequence.len().min(3);
+        for &(switches, duration) in &sequence[..distinct] {
+            let a: Matrix<S, N> = circuit.matrix(switches);
+            maps[switches as usize].fill(&a.map(|row| row.map(|entry| entry * duration)))?;
+        }
+        let maps: &'m Maps<S, N> = maps;
+        let mut state = start_state(circuit, &sequence, maps)?;
         let mut begin_s = S::zero();
         let mut phases = arrayvec::ArrayVec::new();
-        for &(switches, duration_s, map) in &sequence {
+        for &(switches, duration_s) in &sequence {
             let rest: Column<S, N> = circuit.rest(switches);
             let from_rest = difference(&state, &rest);
-            let to_rest = advanced(exponentials[map].less_identity(), &from_rest);
+            let to_rest = advanced(maps[switches as usize].less_identity(), &from_rest);
             state = total(&to_rest, &rest);
             phases.push(Phase {
                 switches,
@@ -102,14 +110,10 @@ impl<S: Scalar, const N: usize> Solved<S, N> {
                 begin_s,
                 from_rest,
                 to_rest,
-                map,
             });
             begin_s += duration_s;
         }
-        Some(Self {
-            phases,
-            exponentials,
-        })
+        Some(Self { phases, maps })
     }
 }
 
@@ -132,13 +136,13 @@ fn total<S: Scalar, const N: usize>(a: &Column<S, N>, b: &Column<S, N>) -> Colum
 /// Solves `(M − Φ)x₀ = γ`, M the identity or, with two legs, the mirror of half a period.
 fn start_state<S: Scalar, const N: usize>(
     circuit: &Circuit<S>,
-    sequence: &[(Switches, S, usize)],
-    exponentials: &[Exponential<S, N>],
+    sequence: &[(Switches, S)],
+    maps: &Maps<S, N>,
 ) -> Option<Column<S, N>> {
     let mut map: Matrix<S, N> = identity();
     let mut offset = [S::zero(); N];
-    for &(switches, _, index) in sequence {
-        let f = exponentials[index].less_identity();
+    for &(switches, _) in sequence {
+        let f = maps[switches as usize].less_identity();
         let rest: Column<S, N> = circuit.rest(switches);
         offset = total(&apply(f, &difference(&offset, &rest)), &offset);
         let mut next = product(f, &map);
@@ -176,7 +180,8 @@ pub fn figures<S: Scalar>(circuit: &Circuit<S>) -> Option<PeriodFigures<S>> {
 }
 
 fn figures_of<S: Scalar, const N: usize>(circuit: &Circuit<S>) -> Option<PeriodFigures<S>> {
-    let solved = Solved::<S, N>::new(circuit)?;
+    let mut room = maps();
+    let solved = Solved::<S, N>::new(circuit, &mut room)?;
     let order = circuit.order();
     let (c, i) = (order.capacitor, order.current);
     let reference = circuit.reference_ohm();
@@ -249,7 +254,7 @@ fn figures_of<S: Scalar, const N: usize>(circuit: &Circuit<S>) -> Option<PeriodF
 /// linear and time-invariant, so `I_k = I_sw,k/(1 + jkωC_d Z_k/B)` and `V_ok = I_k Z_out,k`.
 fn harmonics<S: Scalar, const N: usize>(
     circuit: &Circuit<S>,
-    solved: &Solved<S, N>,
+    solved: &Solved<'_, S, N>,
 ) -> [S; HARMONICS] {
     let omega = TAU / circuit.period_s;
     // e^{−jωt} at the phase boundaries; higher harmonics are its powers.

@@ -31,22 +31,21 @@ pub(super) fn span<S: Scalar, const N: usize>(
         highest_v: phase.from_rest[leg],
     };
     span.include(phase.to_rest[leg]);
-    let mut before = (0.0, phase.from_rest[current].value());
-    for piece in 1..=PIECES {
-        let fraction = piece as f64 / PIECES as f64;
-        let now = if piece == PIECES {
-            phase.to_rest[current].value()
-        } else {
-            exponential.part(fraction, &phase.from_rest)[current].value()
-        };
-        if before.1 * now < 0.0 {
-            let turn = crossing(before, (fraction, now), |f| {
-                exponential.part(f, &phase.from_rest)[current].value()
+    let mut currents = [0.0; PIECES + 1];
+    currents[0] = phase.from_rest[current].value();
+    currents[PIECES] = phase.to_rest[current].value();
+    exponential.eighths(&phase.from_rest, |k, state| currents[k] = state[current]);
+    for (piece, ends) in currents.windows(2).enumerate() {
+        if ends[0] * ends[1] < 0.0 {
+            let at = |k: usize| k as f64 / PIECES as f64;
+            let plain = exponential.values();
+            let start = phase.from_rest.map(S::value);
+            let turn = crossing((at(piece), ends[0]), (at(piece + 1), ends[1]), |f| {
+                plain.part(f, &start)[current]
             });
             // At the turn the voltage does not move with time, so its derivatives are those at a fixed fraction.
             span.include(exponential.part(turn, &phase.from_rest)[leg]);
         }
-        before = (fraction, now);
     }
     span
 }

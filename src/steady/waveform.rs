@@ -1,7 +1,7 @@
 //! Voltage and current over one period, for figures and extremes.
 
 use super::circuit::{Circuit, Switches};
-use super::period::{Phase, Solved};
+use super::period::{Phase, Solved, maps};
 use super::rails::crossing;
 use crate::numerics::matrix::apply;
 use serde::{Deserialize, Serialize};
@@ -47,7 +47,8 @@ pub fn drain_extremes(circuit: &Circuit<f64>) -> Option<DrainExtremes> {
 }
 
 fn sampled<const N: usize>(circuit: &Circuit<f64>, samples: usize) -> Option<Waveform> {
-    let solved = Solved::<f64, N>::new(circuit)?;
+    let mut room = maps();
+    let solved = Solved::<f64, N>::new(circuit, &mut room)?;
     let order = circuit.order();
     let reference = circuit.reference_ohm();
     let mut wave = Waveform {
@@ -87,7 +88,8 @@ fn sampled<const N: usize>(circuit: &Circuit<f64>, samples: usize) -> Option<Wav
 const PIECES: usize = 64;
 
 fn extremes<const N: usize>(circuit: &Circuit<f64>) -> Option<DrainExtremes> {
-    let solved = Solved::<f64, N>::new(circuit)?;
+    let mut room = maps();
+    let solved = Solved::<f64, N>::new(circuit, &mut room)?;
     let mut found = DrainExtremes {
         lowest_v: f64::INFINITY,
         highest_v: f64::NEG_INFINITY,
@@ -103,7 +105,7 @@ fn extremes<const N: usize>(circuit: &Circuit<f64>) -> Option<DrainExtremes> {
 
 fn phase_extremes<const N: usize>(
     circuit: &Circuit<f64>,
-    solved: &Solved<f64, N>,
+    solved: &Solved<'_, f64, N>,
     phase: &Phase<f64, N>,
     leg: usize,
     found: &mut DrainExtremes,
