@@ -5,6 +5,7 @@ pub mod cli;
 pub mod evaluate;
 pub mod numerics;
 pub mod quantity;
+pub mod report;
 pub mod run;
 pub mod search;
 pub mod stage;

@@ -2,6 +2,7 @@
 
 use super::{Failure, Loaded, load, print};
 use crate::quantity::format as engineering;
+use crate::report::figures::{self, CellBest, FigureInput};
 use crate::run::RunError;
 use crate::run::records::CellRecord;
 use crate::run::session::{self, Finished, Job, Observer, Part};
@@ -131,8 +132,18 @@ fn default_folder(study: &Path, part: Option<Part>) -> Result<PathBuf, Failure> 
     Ok(Path::new("results").join(name))
 }
 
-fn close(_loaded: &Loaded, out: &Path, finished: Finished) -> Result<(), Failure> {
+fn close(loaded: &Loaded, out: &Path, finished: Finished) -> Result<(), Failure> {
     let (record, summary) = (&finished.record, &finished.summary);
+    let cells: Vec<CellBest> = summary.cells.iter().map(CellBest::from).collect();
+    let input = FigureInput {
+        title: &loaded.file.study.title,
+        designs: &summary.front,
+        cells: &cells,
+        sweep: finished.sweep.as_ref(),
+        period: finished.period.as_ref(),
+    };
+    figures::write_all(&finished.folder.path().join("figures"), &input)
+        .map_err(|e| Failure::Run(e.to_string()))?;
     let mut text = String::new();
     // Writing to a String cannot fail.
     let _ = writeln!(

@@ -16,11 +16,15 @@ const MM2: f64 = 1e6;
 
 /// A line of `cells.csv`.
 #[derive(Debug, Clone, Serialize)]
-struct CellLine {
-    cell: usize,
-    loaded_q: Option<f64>,
-    supply_v: Option<f64>,
-    best_efficiency: Option<f64>,
+pub struct CellLine {
+    /// Index.
+    pub cell: usize,
+    /// Q_L; none where it is free.
+    pub loaded_q: Option<f64>,
+    /// V_DD, V; none where it is free.
+    pub supply_v: Option<f64>,
+    /// None without a feasible design.
+    pub best_efficiency: Option<f64>,
     least_output_power_dbm: Option<f64>,
     most_output_power_dbm: Option<f64>,
     least_area_m2: Option<f64>,
@@ -34,6 +38,8 @@ struct CellLine {
 pub struct Summary {
     /// The overall front, best efficiency first.
     pub front: Vec<DesignRecord>,
+    /// A line a finished cell.
+    pub cells: Vec<CellLine>,
     /// Cells found finished.
     pub finished: usize,
     /// Assessments of these.
@@ -134,6 +140,7 @@ pub fn summarise(
         hypervolume: front_hypervolume(objectives, reference, &front),
         front,
         finished: lines.len(),
+        cells: lines,
         evaluations,
         residuals: spread_of(residuals),
     })

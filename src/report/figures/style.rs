@@ -1,0 +1,87 @@
+//! Look that all figures share: size, font, colours that colour-blind readers tell apart, ticks.
+
+use plotters::style::{FontStyle, IntoFont, RGBColor, TextStyle, register_font as register};
+
+/// Pixels; at half a page's width letters are still of reading size.
+pub const SIZE: (u32, u32) = (1200, 800);
+/// Height of ordinary letters, pixels.
+pub const TEXT: u32 = 26;
+/// Height of a figure's heading, pixels.
+pub const HEADING: u32 = 30;
+/// Colour of text and axes.
+pub const INK: RGBColor = RGBColor(40, 44, 52);
+/// Colour of grid lines.
+pub const FAINT: RGBColor = RGBColor(224, 226, 230);
+
+/// Eight colours for categories, told apart by colour-blind readers (Okabe and Ito 2008), their yellow darkened for
+/// white paper and grey in place of black.
+pub const CATEGORIES: [RGBColor; 8] = [
+    RGBColor(0, 114, 178),
+    RGBColor(230, 159, 0),
+    RGBColor(0, 158, 115),
+    RGBColor(204, 121, 167),
+    RGBColor(86, 180, 233),
+    RGBColor(213, 94, 0),
+    RGBColor(200, 186, 40),
+    RGBColor(140, 140, 140),
+];
+
+/// A ramp from dark blue over grey to ochre, rising in lightness throughout, so that it reads in grey and to
+/// colour-blind eyes.
+const RAMP: [(u8, u8, u8); 5] = [
+    (18, 40, 92),
+    (62, 82, 128),
+    (122, 126, 132),
+    (186, 168, 98),
+    (250, 226, 110),
+];
+
+/// The ramp's colour at `share` 0..1.
+pub fn ramp(share: f64) -> RGBColor {
+    let last = RAMP.len() - 1;
+    let at = share.clamp(0.0, 1.0) * last as f64;
+    let low = (at.floor() as usize).min(last - 1);
+    let part = at - low as f64;
+    let mix = |a: u8, b: u8| (f64::from(a) + part * (f64::from(b) - f64::from(a))).round() as u8;
+    let (a, b) = (RAMP[low], RAMP[low + 1]);
+    RGBColor(mix(a.0, b.0), mix(a.1, b.1), mix(a.2, b.2))
+}
+
+/// Makes the font known; once is enough, more does no harm.
+pub fn register_font() {
+    for style in [FontStyle::Normal, FontStyle::Bold] {
+        // Refused only for a font that cannot be read; drawing text then fails and says so.
+        let _ = register("sans-serif", style, notosans::REGULAR_TTF);
+    }
+}
+
+/// Ordinary text.
+pub fn text() -> TextStyle<'static> {
+    TextStyle::from(("sans-serif", TEXT).into_font()).color(&INK)
+}
+
+/// A figure's heading.
+pub fn heading() -> TextStyle<'static> {
+    TextStyle::from(("sans-serif", HEADING).into_font()).color(&INK)
+}
+
+/// Smallest and largest, widened by a twentieth, or by a tenth of the value where all are equal.
+pub fn widened(values: impl Iterator<Item = f64>) -> (f64, f64) {
+    let (low, high) = values.fold((f64::INFINITY, f64::NEG_INFINITY), |(l, h), v| {
+        (l.min(v), h.max(v))
+    });
+    if !(low.is_finite() && high.is_finite()) {
+        return (0.0, 1.0);
+    }
+    let room = if high > low {
+        0.05 * (high - low)
+    } else {
+        0.1 * high.abs().max(1e-9)
+    };
+    (low - room, high + room)
+}
+
+/// Decimals that tell steps of a fifth of `span` apart.
+pub fn decimals(span: f64) -> usize {
+    (1.0 - (span / 5.0).log10()).floor().clamp(0.0, 6.0) as usize
+}
