@@ -10,7 +10,7 @@ pub use limits::{Limit, Margin, margins};
 
 use crate::budget::Losses;
 use crate::numerics::scalar::Scalar;
-use crate::stage::area::Area;
+use crate::stage::area::{Area, AreaRules};
 use crate::stage::driver::{Chain, ChainGivens};
 use crate::stage::leg::{Leg, OnState};
 use crate::stage::network::{LoadNetwork, NetworkGivens};
@@ -241,7 +241,7 @@ pub fn core<S: Scalar>(
     })
 }
 
-/// Sections 3 and 7 on top of a [`core`]: drivers, budget, area, with the drain voltages `residual_v` that N and P
+/// Sections 3 and 7 on top of a [`Core`]: drivers, budget, area, with the drain voltages `residual_v` that N and P
 /// find when they turn on (their positive parts count; a search may hand bounds on them instead).
 ///
 /// # Errors
@@ -297,14 +297,17 @@ pub fn performance<S: Scalar>(
         total_power_w,
         efficiency: output_power_w / total_power_w,
         area: Area::new(
+            &AreaRules {
+                capacitor: &setup.capacitor,
+                layout: &setup.layout,
+                driver_ratio: setup.chain.ratio,
+                frequency_hz: f,
+            },
             leg,
             &chain,
-            setup.chain.ratio,
             network,
             coil.area_m2,
             total_power_w,
-            f,
-            (&setup.capacitor, &setup.layout),
         ),
         losses,
     })

@@ -110,7 +110,7 @@ fn published_soft_switching_at_finite_q() {
         (3.0, 0.315435, 1.707096, 0.045067),
         (5.0, 0.317263, 1.649282, 0.047316),
         (10.0, 0.318047, 1.608771, 0.048997),
-        (500.0, 0.318310, 1.571531, 0.050628),
+        (500.0, std::f64::consts::FRAC_1_PI, 1.571531, 0.050628),
     ] {
         let study = direct_study();
         let mut technology = ideal_technology();

@@ -113,7 +113,7 @@ fn law_the_same_bytes_at_any_thread_count_in_parts_and_after_damage() {
     let cut = read(&two, "cells/00001.json");
     fs::write(cells.join("00001.json"), &cut[..cut.len() / 2]).unwrap();
     let altered = String::from_utf8(read(&two, "cells/00002.json")).unwrap();
-    let altered = altered.replacen("\"efficiency\": 0.", "\"efficiency\": 0.9", 1);
+    let altered = altered.replacen("\"efficiency\":0.", "\"efficiency\":0.9", 1);
     fs::write(cells.join("00002.json"), altered).unwrap();
     let resumed = search(&["--resume", "--out", &text(&two)]).success();
     let complaints = String::from_utf8(resumed.get_output().stderr.clone()).unwrap();

@@ -82,7 +82,8 @@ impl<S: Scalar> Div for Complex<S> {
     type Output = Self;
     #[inline(always)]
     fn div(self, other: Self) -> Self {
-        self * other.reciprocal()
+        let inverse = other.reciprocal();
+        inverse.mul(self)
     }
 }
 

@@ -95,7 +95,7 @@ pub fn norm_one<S: Scalar, const N: usize>(a: &Matrix<S, N>) -> f64 {
         )
 }
 
-/// Most halvings an exponential may take: `‖x‖` up to 2^60·[`STEP_NORM`].
+/// Most halvings an exponential may take: `‖x‖` up to 2^60 times the step of one Taylor polynomial.
 pub const MOST_HALVINGS: usize = 60;
 
 /// Norm below which the Taylor polynomial of degree 12 is exact to rounding: 0.35^13/13! < 2e-16.

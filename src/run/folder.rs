@@ -98,7 +98,7 @@ impl RunFolder {
     /// # Errors
     /// As [`RunFolder::write`].
     pub fn write_json<T: Serialize>(&self, name: &str, value: &T) -> Result<(), RunError> {
-        let mut bytes = serde_json::to_vec_pretty(value).map_err(|e| RunError::Damaged {
+        let mut bytes = serde_json::to_vec(value).map_err(|e| RunError::Damaged {
             path: self.path.join(name),
             reason: format!("cannot be written as JSON: {e}"),
         })?;

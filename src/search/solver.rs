@@ -291,10 +291,11 @@ impl SequentialQuadratic {
                     self.accept(n, point, &a, next);
                     return Ok(());
                 }
-                if trial == 0 && violation(&next) > self.violation.max(self.tolerance) {
-                    if self.correct(problem, &a, &next, &step, enough)? {
-                        return Ok(());
-                    }
+                if trial == 0
+                    && violation(&next) > self.violation.max(self.tolerance)
+                    && self.correct(problem, &a, &next, &step, enough)?
+                {
+                    return Ok(());
                 }
                 factor *= 0.4;
             } else {

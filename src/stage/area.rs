@@ -21,28 +21,39 @@ pub struct Area<S> {
     pub inductors_m2: S,
 }
 
+/// What areas follow from besides the design.
+#[derive(Debug, Clone, Copy)]
+pub struct AreaRules<'a> {
+    /// The capacitor's density.
+    pub capacitor: &'a Capacitor,
+    /// Widths and decoupling.
+    pub layout: &'a Layout,
+    /// PMOS/NMOS ratio of the chain β_r.
+    pub driver_ratio: f64,
+    /// Carrier, Hz.
+    pub frequency_hz: f64,
+}
+
 impl<S: Scalar> Area<S> {
     /// `A = B s (W_n+W_p)a_w + B Σw_i(1+β_r)a_w + capacitors/density + decap + inductors` (17), the decoupling
     /// `(P_total/(V_DD f))/(ripple V_DD)` over its density. Each leg owns a series capacitor of B·C_s.
     pub fn new(
+        rules: &AreaRules<'_>,
         leg: &Leg<S>,
         chain: &Chain<S>,
-        driver_ratio: f64,
         network: &LoadNetwork<S>,
         coil_area_m2: S,
         total_power_w: S,
-        frequency_hz: f64,
-        rules: (&Capacitor, &Layout),
     ) -> Self {
-        let (capacitor, layout) = rules;
+        let (capacitor, layout) = (rules.capacitor, rules.layout);
         let legs = f64::from(leg.legs);
         let width_area = layout.width_area_m;
         let [n, p] = leg.widths_m;
         let shunt = network.shunt.map_or(S::zero(), |s| s.capacitance_f);
-        let charge = total_power_w / (leg.supply_v * frequency_hz);
+        let charge = total_power_w / (leg.supply_v * rules.frequency_hz);
         Self {
             switches_m2: (n + p) * (legs * f64::from(leg.stack) * width_area),
-            drivers_m2: chain.nmos_width_sum_m * (legs * (1.0 + driver_ratio) * width_area),
+            drivers_m2: chain.nmos_width_sum_m * (legs * (1.0 + rules.driver_ratio) * width_area),
             capacitors_m2: (network.series_capacitance_f * (legs * legs) + shunt)
                 / capacitor.density_f_m2,
             decoupling_m2: charge

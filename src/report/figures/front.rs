@@ -34,6 +34,7 @@ pub fn draw<B: DrawingBackend>(area: &DrawingArea<B, Shift>, input: &FigureInput
         .map_err(reason)?;
     let mut chart = ChartBuilder::on(&body)
         .margin_top(70)
+        .margin_left(30)
         .margin_right(20)
         .x_label_area_size(80)
         .y_label_area_size(100)

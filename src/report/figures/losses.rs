@@ -46,6 +46,7 @@ pub fn draw<B: DrawingBackend>(area: &DrawingArea<B, Shift>, sweep: &WidthSweep)
     .map_err(reason)?;
     let mut chart = ChartBuilder::on(&body)
         .margin_top(90)
+        .margin_left(30)
         .margin_right(30)
         .x_label_area_size(80)
         .y_label_area_size(100)
@@ -60,12 +61,27 @@ pub fn draw<B: DrawingBackend>(area: &DrawingArea<B, Shift>, sweep: &WidthSweep)
         .axis_desc_style(text())
         .x_labels(6)
         .y_labels(8)
-        .x_label_formatter(&|v| format!("{v:.0}"))
+        .x_label_formatter(&|_| String::new())
+        .disable_x_mesh()
         .y_label_formatter(&|v| format!("{v:.*}", decimals(top)))
         .x_desc("NMOS width (µm)")
         .y_desc("loss (mW)")
         .draw()
         .map_err(reason)?;
+    // The logarithmic axis of the library names decades only.
+    let below = text().pos(Pos::new(HPos::Center, VPos::Top));
+    for decade in -1..7 {
+        for digit in [1.0, 2.0, 5.0] {
+            let width = digit * 10f64.powi(decade);
+            if (first.0..=last.0).contains(&width) {
+                let (x, y) = chart.backend_coord(&(width, 0.0));
+                body.draw(&PathElement::new([(x, y), (x, y + 8)], INK))
+                    .map_err(reason)?;
+                body.draw(&Text::new(format!("{width}"), (x, y + 12), below.clone()))
+                    .map_err(reason)?;
+            }
+        }
+    }
     let mut floor = vec![0.0; rows.len()];
     let mut bands: Vec<(String, RGBColor, Vec<f64>)> = shown
         .iter()

@@ -22,7 +22,8 @@ pub fn draw<B: DrawingBackend>(area: &DrawingArea<B, Shift>, record: &PeriodReco
     .map_err(reason)?;
     let mut chart = ChartBuilder::on(area)
         .margin_top(130)
-        .margin_right(20)
+        .margin_left(30)
+        .margin_right(34)
         .x_label_area_size(80)
         .y_label_area_size(110)
         .right_y_label_area_size(110)
