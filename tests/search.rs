@@ -7,11 +7,11 @@ use std::f64::consts::PI;
 use std::fs;
 use std::path::{Path, PathBuf};
 use std::sync::atomic::AtomicBool;
-use widefront::evaluate::Setup;
+use widefront::evaluate::{Setup, evaluate};
 use widefront::search::Context;
 use widefront::search::cell::search_cell;
 use widefront::search::space::cells;
-use widefront::study::{Network, Objective, Range, Space};
+use widefront::study::{Design, Network, Objective, Range, Space};
 use widefront::technology::Inductor;
 
 /// What the issue of this program asks for.
@@ -68,6 +68,17 @@ fn published_width_of_least_loss_in_closed_form() {
         (found / expected - 1.0).abs() < WIDTH_TOLERANCE,
         "{found} instead of {expected}"
     );
+    // And it is a maximum: a per cent either way is worse.
+    let efficiency = |nmos_width_m: f64| {
+        let design = Design {
+            nmos_width_m,
+            loaded_q: 5000.0,
+            ..common::direct_design()
+        };
+        evaluate(&setup, &design).figures.unwrap().efficiency
+    };
+    assert!(efficiency(found) > efficiency(0.99 * found));
+    assert!(efficiency(found) > efficiency(1.01 * found));
 }
 
 fn study_path(name: &str) -> PathBuf {
