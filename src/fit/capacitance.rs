@@ -78,7 +78,7 @@ pub enum NoCapacitance {
 /// `c_gate` as the mean over the swing of the capacitance of the gate to source and drain, less the drain's overlap;
 /// `c_gd` as half the value at V_GS = 0, where the channel is gone and the overlaps of source and drain are left.
 ///
-/// What exceeds the value at 0 belongs to the channel and is scaled to the device's length.
+/// What exceeds the least value measured, the fringes, lies under the gate and is scaled to the device's length.
 pub fn gate(
     tables: &Tables,
     device: usize,
@@ -134,7 +134,8 @@ pub fn gate(
             off: off_f_m,
         });
     }
-    let scaled = |mean: f64| (mean - off_f_m) * length_m / structure_length_m + off_f_m;
+    let fringe_f_m = curve.iter().map(|(_, c)| *c).fold(off_f_m, f64::min);
+    let scaled = |mean: f64| (mean - fringe_f_m) * length_m / structure_length_m + fringe_f_m;
     let overlap_f_m = off_f_m / 2.0;
     let range = curve.iter().filter(|(v, _)| *v >= 2.0 / 3.0 * nominal_v);
     Ok(Some(Gate {

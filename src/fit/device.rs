@@ -278,15 +278,24 @@ fn on_resistance(
             unknown,
         });
     }
-    let minimum = law
+    let mut minimum = law
         .solve()
         .ok_or(FitError::NoMinimum { device, polarity })?;
+    let (tables, index, nominal_v) = (context.tables, context.device, context.nominal_v);
+    let of = out.polarity;
+    let growth =
+        |figures: &Transistor| leakage::off(tables, index, of, nominal_v, figures)?.growth_miss();
+    if let Some(chosen) = law.chosen_slope(&minimum, growth) {
+        minimum = chosen;
+        out.notes.push(
+            "slope: of those that the on-resistances cannot tell apart, the one nearest the off currents over temperature"
+                .to_owned(),
+        );
+    }
     let errors = deviations(&minimum).map(|d| resistance::errors(&minimum.variables, d));
     let values = resistance::figures(&minimum.variables);
     let single = temperatures == 1;
-    let mut order: Vec<usize> = (0..VARIABLES).collect();
-    order.rotate_left(0);
-    for k in order {
+    for k in 0..VARIABLES {
         let key = resistance::KEYS[k];
         let assumed = single && (key == "threshold_drift" || key == "mobility_exponent");
         let note = match (assumed, errors) {
@@ -568,12 +577,9 @@ fn leakage(context: &Context<'_>, out: &mut FittedDevice, builder: &mut Builder)
         off.temperature_k, off.drain_v
     );
     builder.add("off_current", off.current_a_m, None, Some(note));
-    let hot = off
-        .points
-        .iter()
-        .filter(|(k, ..)| *k > off.temperature_k + 1.0);
     let miss = |p: &&(f64, f64, f64)| (p.2 / p.1).ln().abs();
-    if let Some(p) = hot
+    if let Some(p) = off
+        .hot()
         .max_by(|a, b| miss(a).total_cmp(&miss(b)))
         .filter(|p| miss(p) > LARGEST_MISS)
     {

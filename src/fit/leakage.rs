@@ -17,6 +17,21 @@ pub struct Off {
     pub points: Vec<(f64, f64, f64)>,
 }
 
+impl Off {
+    /// Points above the temperature of the current, whose leakage matters to a hot switch.
+    pub fn hot(&self) -> impl Iterator<Item = &(f64, f64, f64)> {
+        let from_k = self.temperature_k + 1.0;
+        self.points.iter().filter(move |(k, ..)| *k > from_k)
+    }
+
+    /// Sum of squares of ln(model/measured) of the hot points; `None` without any.
+    pub fn growth_miss(&self) -> Option<f64> {
+        self.hot().next()?;
+        let miss = |&(_, measured, model): &(f64, f64, f64)| (model / measured).ln().powi(2);
+        Some(self.hot().map(miss).sum())
+    }
+}
+
 /// The current at the drain voltage nearest the nominal one and the temperature nearest the reference, brought to the
 /// reference by equation (3) with the other figures of `device`; `None` where no current above 0 was measured.
 pub fn off(

@@ -218,25 +218,26 @@ pub fn minimise<const N: usize>(
     // within a ten-thousandth of the least sum: the same minimum for every use
     let agreed = |end: &&Damped<N>| end.squares <= best.squares * (1.0 + 1e-4) + 1e-12;
     let starts_agreed = ends.iter().filter(agreed).count();
-    Some(described(problem, best, starts_agreed))
+    Some(described(problem, &best.point, starts_agreed))
 }
 
-fn described<const N: usize>(
+/// What the residuals say at a point that `starts_agreed` starts led to.
+pub fn described<const N: usize>(
     problem: &impl Residuals<N>,
-    best: &Damped<N>,
+    point: &Column<f64, N>,
     starts_agreed: usize,
 ) -> Minimum<N> {
     let bounds = problem.bounds();
     let free: [bool; N] = std::array::from_fn(|k| bounds[k].0 < bounds[k].1);
-    let points = problem.at(&best.point).len();
+    let points = problem.at(point).len();
     let measurements: f64 = (0..points).map(|i| problem.repeats(i)).sum();
     let unknown = free.iter().filter(|&&f| f).count();
     let freedom = (measurements as usize).saturating_sub(unknown);
-    let total = best.squares + problem.scatter();
+    let total = squares(problem, point) + problem.scatter();
     let deviation = (freedom > 0).then(|| (total / freedom as f64).sqrt());
-    let normal = normal(problem, &best.point);
+    let normal = normal(problem, point);
     Minimum {
-        variables: best.point,
+        variables: *point,
         squares: total,
         deviation,
         freedom,
@@ -244,7 +245,7 @@ fn described<const N: usize>(
         at_bound: std::array::from_fn(|k| {
             let (low, high) = bounds[k];
             let near = 1e-6 * (high - low);
-            free[k] && (best.point[k] - low < near || high - best.point[k] < near)
+            free[k] && (point[k] - low < near || high - point[k] < near)
         }),
         starts_agreed,
     }

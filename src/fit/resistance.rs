@@ -5,13 +5,13 @@
 //! taken off the gate to get the conductance at V_DS = 0. Least squares of `ln r`, each temperature with the same
 //! weight in all, over the gate voltages of a closed switch.
 
-use super::least_squares::{Minimum, Residuals, minimise};
+use super::least_squares::{Minimum, Residuals, described, minimise};
 use super::table::{Kind, Polarity, Row, Tables};
 use crate::numerics::matrix::Column;
 use crate::study::{FaultKind, Faults};
 use crate::technology::Transistor;
 use crate::technology::transistor::{REFERENCE_TEMPERATURE_K, WarmTransistor};
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 
 /// Drain voltage up to which a row tells an on-resistance, V.
 pub const SMALL_DRAIN_V: f64 = 0.1;
@@ -159,15 +159,24 @@ fn distinct(mut values: Vec<f64>) -> Vec<f64> {
     values
 }
 
-/// Transfer curves hold more gate voltages than drain voltages.
+/// Curves whose rows hold more gate voltages than drain voltages are transfer curves; a table is what most of its
+/// curves are.
 fn transfer(rows: &[Row]) -> bool {
-    let count = |voltage: fn(&Row) -> f64| {
-        let millivolts = rows
-            .iter()
-            .map(|row| (voltage(row) / SAME_V).round() as i64);
-        millivolts.collect::<std::collections::BTreeSet<_>>().len()
-    };
-    count(|row| row.voltage_v) > count(|row| row.drain_v)
+    let mut curves: BTreeMap<_, [BTreeSet<i64>; 2]> = BTreeMap::new();
+    for row in rows {
+        let kelvin = (row.temperature_k / SAME_K).round() as i64;
+        let picometres = (row.length_m * 1e12).round() as i64;
+        let voltages = curves
+            .entry((row.device, row.polarity, picometres, kelvin))
+            .or_default();
+        for (of, volts) in voltages.iter_mut().zip([row.voltage_v, row.drain_v]) {
+            of.insert((volts / SAME_V).round() as i64);
+        }
+    }
+    let transfers = curves
+        .values()
+        .filter(|[gate, drain]| gate.len() > drain.len());
+    2 * transfers.count() > curves.len()
 }
 
 fn points(rows: &[&Row]) -> Vec<Point> {
@@ -200,7 +209,13 @@ fn points(rows: &[&Row]) -> Vec<Point> {
 /// Sizes that make the variables of order 1; the first is `ln(k'/size)`.
 const SIZES: [f64; VARIABLES] = [1e-4, 1.0, 1e-3, 1.0, 1.0, 1.0, 1e-3];
 
+/// Place of the slope among the variables.
+const SLOPE: usize = 3;
+/// Steps between the least and the highest slope, where it is chosen.
+const SLOPES: u32 = 12;
+
 /// Equation (1) against the points.
+#[derive(Clone)]
 pub struct Law<'c> {
     curves: &'c Curves,
     /// Start and weight of each temperature's run of points.
@@ -271,8 +286,42 @@ impl<'c> Law<'c> {
         self.bounds.iter().filter(|(low, high)| low < high).count()
     }
 
-    /// Several starts: slope, degradation and access resistance low and high, threshold from two places.
+    /// The minimum from several starts: slope, degradation and access resistance low and high, threshold from two
+    /// places.
     pub fn solve(&self) -> Option<Minimum<VARIABLES>> {
+        minimise(self, &self.starts()?)
+    }
+
+    /// The slope that `miss` likes best among those whose sum of squares the standard error cannot tell from that of
+    /// `minimum`, the other variables fitted to it. Above the threshold a slope is seen so faintly that what it does
+    /// below may choose it. `None` where `miss` has nothing to say.
+    pub fn chosen_slope(
+        &self,
+        minimum: &Minimum<VARIABLES>,
+        miss: impl Fn(&Transistor) -> Option<f64>,
+    ) -> Option<Minimum<VARIABLES>> {
+        let most = minimum.squares * (1.0 + 1.0 / minimum.freedom.max(1) as f64);
+        let (low, high) = self.bounds[SLOPE];
+        let mut starts = self.starts()?;
+        starts.push(minimum.variables);
+        let mut best: Option<(f64, Column<f64, VARIABLES>)> = None;
+        for step in 0..=SLOPES {
+            let slope = low + (high - low) * f64::from(step) / f64::from(SLOPES);
+            let mut held = self.clone();
+            held.bounds[SLOPE] = (slope, slope);
+            let Some(found) = minimise(&held, &starts).filter(|found| found.squares <= most) else {
+                continue;
+            };
+            let figures = figures(&found.variables);
+            let miss = miss(&transistor(self.curves.length_m, &figures))?;
+            if best.is_none_or(|(least, _)| miss < least) {
+                best = Some((miss, found.variables));
+            }
+        }
+        best.map(|(_, variables)| described(self, &variables, minimum.starts_agreed))
+    }
+
+    fn starts(&self) -> Option<Vec<Column<f64, VARIABLES>>> {
         let (from_v, _) = self.curves.range_v();
         let last = self.curves.points.last()?;
         let mut starts = Vec::new();
@@ -283,19 +332,12 @@ impl<'c> Law<'c> {
                     let access = access * self.bounds[6].1;
                     let channel = last.resistance_ohm_m * 0.6 * (last.gate_v - threshold).max(0.05);
                     let gain = self.curves.length_m / channel;
-                    starts.push([
-                        (gain / SIZES[0]).ln(),
-                        threshold,
-                        -0.8,
-                        slope,
-                        theta,
-                        -1.3,
-                        access,
-                    ]);
+                    let log = (gain / SIZES[0]).ln();
+                    starts.push([log, threshold, -0.8, slope, theta, -1.3, access]);
                 }
             }
         }
-        minimise(self, &starts)
+        Some(starts)
     }
 
     fn scatter_of(&self, run: &std::ops::Range<usize>) -> f64 {
