@@ -366,7 +366,7 @@ fn notes(out: &mut FittedDevice, curves: &Curves, minimum: &Minimum<VARIABLES>, 
         .map(|k| format!("{k:.2}"))
         .collect();
     out.notes.push(format!(
-        "fitted: gate length {}, V_GS {low:.3} V to {high:.3} V, {} K, {} points; {} starts agreed",
+        "fitted: gate length {}, V_GS {low:.3} V to {high:.3} V, {} K, {} points; {} of 8 starts agreed",
         Dimension::Length.show(curves.length_m),
         kelvins.join(", "),
         curves.points.len(),

@@ -302,7 +302,9 @@ impl<'c> Law<'c> {
     ) -> Option<Minimum<VARIABLES>> {
         let most = minimum.squares * (1.0 + 1.0 / minimum.freedom.max(1) as f64);
         let (low, high) = self.bounds[SLOPE];
+        // near the minimum already: its own place and two far ones will do
         let mut starts = self.starts()?;
+        starts.truncate(2);
         starts.push(minimum.variables);
         let mut best: Option<(f64, Column<f64, VARIABLES>)> = None;
         for step in 0..=SLOPES {
