@@ -3,8 +3,8 @@
 use std::fmt::Write as _;
 use std::path::{Path, PathBuf};
 use widefront::fit::{self, Existing, FitError, FittedPair, Options, Polarity};
+use widefront::technology::Transistor;
 use widefront::technology::transistor::WarmTransistor;
-use widefront::technology::{Transistor, TransistorPair};
 
 const KELVINS: [f64; 4] = [233.15, 300.15, 343.15, 398.15];
 
@@ -124,9 +124,8 @@ fn truth(polarity: Polarity) -> [(&'static str, f64); 7] {
 }
 
 const TRIALS: usize = 200;
-/// A figure lies within its stated error 95 times in 100; of 200 trials at least 184, three standard deviations of
-/// their binomial below 190.
-const LEAST_INSIDE: usize = 181;
+/// A figure lies within its stated error 95 times in 100; bounds hold the fit nearer than the errors say.
+const LEAST_INSIDE: usize = 190;
 
 #[test]
 fn law_known_figures_come_back_within_their_stated_errors() {
@@ -151,4 +150,309 @@ fn law_known_figures_come_back_within_their_stated_errors() {
         inside.iter().flatten().all(|count| *count >= LEAST_INSIDE),
         "{inside:?}"
     );
+}
+
+#[test]
+fn law_exact_tables_give_their_resistances_back() {
+    /// Figures are written with four digits.
+    const ROUNDING: f64 = 2e-3;
+    let folder = tempfile::tempdir().expect("a folder");
+    let text = transfer(&KELVINS, 0.0, &mut Noise(1));
+    let pairs = fitted(&[written(folder.path(), "t.csv", &text)]).expect("a fit");
+    for device in &pairs[0].devices {
+        assert_eq!(device.residuals.len(), 4 * 12);
+        let worst = device
+            .residuals
+            .iter()
+            .map(|r| r.error().abs())
+            .fold(0.0, f64::max);
+        assert!(worst < ROUNDING, "{worst}");
+    }
+}
+
+/// Column names, units, byte-order mark, line ends, comments and order do not matter.
+#[test]
+fn law_the_same_table_written_otherwise_gives_the_same_figures() {
+    let folder = tempfile::tempdir().expect("a folder");
+    let plain = transfer(&KELVINS, 0.01, &mut Noise(3));
+    let mut other = String::from(
+        "\u{feff}# measured on a bench\r\ni_d_uA, v_ds_mv, v_gs, temperature_degc, length_nm, width_um, polarity, device\r\n",
+    );
+    for line in plain.lines().skip(1) {
+        let f: Vec<&str> = line.split(',').collect();
+        let number = |k: usize| f[k].parse::<f64>().expect("a number");
+        let _ = write!(
+            other,
+            "{:e}, {}, {}, {}, {}, {}, {}, {}\r\n# between rows\r\n",
+            number(7) * 1e6,
+            number(6) * 1e3,
+            f[5],
+            number(4) - 273.15,
+            number(3) * 1e9,
+            number(2) * 1e6,
+            f[1],
+            f[0]
+        );
+    }
+    let a = fitted(&[written(folder.path(), "a.csv", &plain)]).expect("a fit");
+    let b = fitted(&[written(folder.path(), "b.csv", &other)]).expect("a fit");
+    for (a, b) in a[0].devices.iter().zip(&b[0].devices) {
+        for (a, b) in a.figures.iter().zip(&b.figures) {
+            assert!(
+                (a.value - b.value).abs() <= 1e-3 * a.value.abs(),
+                "{} {}",
+                a.text,
+                b.text
+            );
+        }
+    }
+}
+
+/// On-resistances of the core pair of an open 130 nm process, ohm um, at V_GS 0.8, 0.9, 1.0, 1.1, 1.2 and 1.35 V and
+/// V_DS 0.05 V: IHP-Open-PDK, SG13G2, libs.doc/meas/MOS, commit 5cccb161, Apache-2.0.
+const MEASURED: [(&str, f64, [f64; 6]); 8] = [
+    ("nmos", 233.15, [1369.0, 983.9, 784.0, 666.1, 590.1, 518.3]),
+    ("nmos", 300.15, [1475.0, 1102.8, 896.6, 769.4, 684.9, 602.7]),
+    ("nmos", 343.15, [1560.6, 1193.5, 981.9, 847.8, 756.9, 666.9]),
+    (
+        "nmos",
+        398.15,
+        [1693.0, 1327.1, 1106.0, 961.4, 861.2, 759.3],
+    ),
+    (
+        "pmos",
+        233.15,
+        [4277.9, 3232.1, 2651.1, 2292.1, 2049.0, 1807.4],
+    ),
+    (
+        "pmos",
+        300.15,
+        [4397.5, 3465.0, 2905.6, 2539.9, 2284.4, 2021.3],
+    ),
+    (
+        "pmos",
+        343.15,
+        [4523.1, 3631.6, 3077.7, 2707.1, 2444.0, 2169.4],
+    ),
+    (
+        "pmos",
+        398.15,
+        [4662.4, 3818.0, 3275.3, 2902.6, 2630.2, 2340.8],
+    ),
+];
+
+/// The model misses 2.3 % at most where all 48 points a polarity are fitted; of these 24 alone the worst is 2.52 %.
+const LARGEST_MEASURED_MISS: f64 = 0.026;
+
+#[test]
+fn published_on_resistances_of_an_open_process_are_met() {
+    let folder = tempfile::tempdir().expect("a folder");
+    let mut text = String::from("device,polarity,width_um,length_nm,temperature_k,v_gs,v_ds,i_d\n");
+    for (polarity, kelvin, ohm_um) in MEASURED {
+        for (v, r) in [0.8, 0.9, 1.0, 1.1, 1.2, 1.35].into_iter().zip(ohm_um) {
+            let _ = writeln!(
+                text,
+                "core,{polarity},10,130,{kelvin},{v},0.05,{:e}",
+                0.05 / (r / 10.0)
+            );
+        }
+    }
+    let pairs = fitted(&[written(folder.path(), "t.csv", &text)]).expect("a fit");
+    for device in &pairs[0].devices {
+        assert_eq!(device.residuals.len(), 24);
+        for r in &device.residuals {
+            assert!(r.error().abs() < LARGEST_MEASURED_MISS, "{r:?}");
+        }
+    }
+}
+
+/// The message of a fault: what was read, and where.
+fn refusal(text: &str) -> String {
+    let folder = tempfile::tempdir().expect("a folder");
+    let path = written(folder.path(), "t.csv", text);
+    match fitted(&[path]) {
+        Ok(_) => "no refusal".to_owned(),
+        Err(error) => error.to_string(),
+    }
+}
+
+#[test]
+fn law_garbage_gets_a_clear_answer() {
+    let good = transfer(&KELVINS, 0.0, &mut Noise(1));
+    let header = good.lines().next().unwrap_or_default();
+    let three: Vec<&str> = good
+        .lines()
+        .filter(|l| l.contains("nmos,"))
+        .skip(20)
+        .take(3)
+        .collect();
+    let on = "core,nmos,1e-5,1.3e-7,300.15,1.2,0.05";
+    let cases = [
+        (String::new(), "is empty"),
+        (
+            "nothing,here\n1,2\n".to_owned(),
+            "t.csv:1: nothing: unknown key",
+        ),
+        (format!("{header}\n"), "a header and no rows"),
+        (good.replace(",i_d", ",i_q"), "t.csv:1: i_q: unknown key"),
+        (
+            good.replace(",width_m", ",width_furlong"),
+            "width_mm, width_um",
+        ),
+        (
+            good.replace("width_m,", "width_m,width_um,"),
+            "read the column width twice",
+        ),
+        (
+            good.replace("width_m,length_m", "width_m"),
+            "t.csv:1: length: missing",
+        ),
+        (
+            format!("{header}\n{on},NaN\n"),
+            "t.csv:2: i_d: read \"NaN\"",
+        ),
+        (format!("{header}\n{on},\n"), "t.csv:2: i_d: read \"\""),
+        (format!("{header}\n{on},-1e-3\n"), "turn the signs"),
+        (
+            format!("{header}\n{on}\n"),
+            "t.csv:2: read 7 fields, allowed 8",
+        ),
+        (
+            format!("{header}\n{}\n", on.replace("300.15", "27") + ",1e-3"),
+            "temperature: read 27",
+        ),
+        (
+            format!("{header}\n{}\n", on.replace("1e-5", "10 um") + ",1e-3"),
+            "width: read \"10 um\"",
+        ),
+        (
+            format!("{header}\n{}\n", three.join("\n")),
+            "read 3 points at 1 temperature(s)",
+        ),
+        (
+            good.lines()
+                .filter(|l| !l.contains("pmos"))
+                .collect::<Vec<_>>()
+                .join("\n"),
+            "core pmos: read no on-resistance",
+        ),
+        ("device;polarity\ncore;nmos\n".to_owned(), "unknown key"),
+    ];
+    for (text, message) in cases {
+        let refusal = refusal(&text);
+        assert!(refusal.contains(message), "{refusal:?} without {message:?}");
+    }
+}
+
+#[test]
+fn law_one_temperature_is_said_and_assumed() {
+    let folder = tempfile::tempdir().expect("a folder");
+    let text = transfer(&[300.15], 0.0, &mut Noise(1));
+    let pairs = fitted(&[written(folder.path(), "t.csv", &text)]).expect("a fit");
+    let device = &pairs[0].devices[0];
+    let assumed: Vec<&str> = device
+        .figures
+        .iter()
+        .filter(|f| f.assumed)
+        .map(|f| f.key)
+        .collect();
+    assert!(
+        assumed.starts_with(&["threshold_drift", "mobility_exponent"]),
+        "{assumed:?}"
+    );
+    assert!(device.warnings.iter().any(|w| w.contains("300.15 K alone")));
+}
+
+/// Repeated measurements are gathered: a long table takes no longer to fit than a short one, and gives the same.
+#[test]
+fn law_many_rows_are_gathered() {
+    const REPEATS: usize = 450;
+    const SAME: f64 = 1e-3;
+    let folder = tempfile::tempdir().expect("a folder");
+    let once = transfer(&KELVINS, 0.003, &mut Noise(5));
+    let rows = once.split_once('\n').map_or("", |(_, rows)| rows);
+    let many = format!("{}{}", once, rows.repeat(REPEATS - 1));
+    assert!(many.lines().count() > 100_000);
+    let a = fitted(&[written(folder.path(), "a.csv", &once)]).expect("a fit");
+    let b = fitted(&[written(folder.path(), "b.csv", &many)]).expect("a fit");
+    for (key, _) in truth(Polarity::Nmos) {
+        let (a, b) = (
+            figure(&a[0], Polarity::Nmos, key).0,
+            figure(&b[0], Polarity::Nmos, key).0,
+        );
+        assert!((a - b).abs() <= SAME * a.abs(), "{key}: {a} {b}");
+    }
+}
+
+/// Capacitances of known figures: a gate from its off to its on value, junctions of two shapes.
+fn capacitances() -> (String, String) {
+    let mut gate = String::from(
+        "device,polarity,width_m,length_m,temperature_k,v_gs,terminals,capacitance_f\n",
+    );
+    let mut junction = String::from(
+        "device,polarity,structure,area_m2,perimeter_m,temperature_k,v_reverse,capacitance_f\n",
+    );
+    for polarity in ["nmos", "pmos"] {
+        for step in 0..=24 {
+            let v = 0.05 * f64::from(step);
+            // 0.7 fF/um rising in a straight line to 1.5: a mean of 1.1 over the swing
+            let c = (0.7 + 0.8 * v / 1.2) * 1e-9 * 0.1;
+            let _ = writeln!(
+                gate,
+                "core,{polarity},0.1,1.3e-7,300.15,{v},gate_to_source_drain,{c:e}"
+            );
+            let graded = (1.0 + v / 0.7).powf(-0.35);
+            for (name, area, edge) in [("area", 4e-8, 1e-3), ("edge", 3e-8, 0.1)] {
+                let c = (1e-3 * area + 3e-11 * edge) * graded;
+                let _ = writeln!(
+                    junction,
+                    "core,{polarity},{name},{area},{edge},300.15,{v},{c:e}"
+                );
+            }
+        }
+    }
+    (gate, junction)
+}
+
+#[test]
+fn law_capacitances_and_off_current_come_back() {
+    const CLOSE: f64 = 1e-3;
+    let folder = tempfile::tempdir().expect("a folder");
+    let (gate, junction) = capacitances();
+    let mut off = String::from("device,polarity,width_m,length_m,temperature_k,v_ds,i_d\n");
+    for polarity in Polarity::BOTH {
+        for kelvin in KELVINS {
+            let i = 10e-6 * WarmTransistor::new(&demo(polarity), kelvin).off_current_a_m;
+            let _ = writeln!(
+                off,
+                "core,{},1e-5,1.3e-7,{kelvin},1.2,{i:e}",
+                polarity.name()
+            );
+        }
+    }
+    let texts = [transfer(&KELVINS, 0.0, &mut Noise(1)), gate, junction, off];
+    let paths: Vec<PathBuf> = texts
+        .iter()
+        .enumerate()
+        .map(|(k, text)| written(folder.path(), &format!("{k}.csv"), text))
+        .collect();
+    let pairs = fitted(&paths).expect("a fit");
+    let expected = [
+        ("gate_capacitance", 1.1e-9 - 0.35e-9),
+        ("overlap_capacitance", 0.35e-9),
+        ("junction_capacitance", 0.19e-6 * 1e-3 + 3e-11),
+        ("junction_grading", 0.35),
+        ("junction_potential", 0.7),
+        ("off_current", 40e-6),
+    ];
+    for (key, truth) in expected {
+        for polarity in Polarity::BOTH {
+            let (value, _) = figure(&pairs[0], polarity, key);
+            assert!(
+                (value / truth - 1.0).abs() < CLOSE,
+                "{key}: {value} {truth}"
+            );
+        }
+    }
+    assert!(pairs[0].devices.iter().all(|device| device.kept.is_empty()));
 }
