@@ -456,3 +456,159 @@ fn law_capacitances_and_off_current_come_back() {
     }
     assert!(pairs[0].devices.iter().all(|device| device.kept.is_empty()));
 }
+
+fn command() -> assert_cmd::Command {
+    assert_cmd::Command::new(assert_cmd::cargo::cargo_bin!("widefront"))
+}
+
+/// The demo technology of the repository.
+const DEMO: &str = include_str!("../configs/technology/demo55.toml");
+
+#[test]
+fn law_a_merge_loses_nothing_and_a_second_one_changes_nothing() {
+    let folder = tempfile::tempdir().expect("a folder");
+    let table = written(
+        folder.path(),
+        "t.csv",
+        &transfer(&KELVINS, 0.0, &mut Noise(1)),
+    );
+    let into = written(folder.path(), "technology.toml", DEMO);
+    let fit = || {
+        command()
+            .args(["fit", "--date", "2026-01-31", "--source", "invented"])
+            .arg(&table)
+            .arg("--into")
+            .arg(&into)
+            .assert()
+            .success();
+        std::fs::read_to_string(&into).expect("the file just written")
+    };
+    let first = fit();
+    assert_eq!(first, fit());
+    let before = widefront::technology::read_str(DEMO, Path::new("demo")).expect("the demo");
+    let after = widefront::technology::read_str(&first, Path::new("merged")).expect("the merged");
+    let (before, after) = (before.technology, after.technology);
+    assert_eq!(
+        (&before.inductor, &before.capacitor, &before.layout),
+        (&after.inductor, &after.capacitor, &after.layout)
+    );
+    let (old, new) = (
+        &before.transistors["core"].nmos,
+        &after.transistors["core"].nmos,
+    );
+    assert_eq!(old.gate_capacitance_f_m, new.gate_capacitance_f_m);
+    assert_eq!(old.off_current_a_m, new.off_current_a_m);
+    assert_eq!(new.length_m, 130e-9);
+    // every line of the demo is there but those of the figures that were fitted
+    let fitted: Vec<&str> = truth(Polarity::Nmos).map(|(key, _)| key).to_vec();
+    for line in DEMO.lines() {
+        let replaced = fitted.iter().any(|key| line.starts_with(key)) || line.starts_with("length");
+        assert!(replaced || first.contains(line), "lost: {line}");
+    }
+    for part in [
+        "# fit: 2026-01-31, from t.csv",
+        "# fit: source: invented",
+        "K, 48 points",
+        "# fit: +- ",
+    ] {
+        assert!(first.contains(part), "{part} not in {first}");
+    }
+}
+
+#[test]
+fn law_a_new_file_holds_whole_transistors_and_says_what_is_assumed() {
+    let folder = tempfile::tempdir().expect("a folder");
+    let table = written(
+        folder.path(),
+        "t.csv",
+        &transfer(&KELVINS, 0.0, &mut Noise(1)),
+    );
+    let into = folder.path().join("new.toml");
+    let run = command()
+        .args(["fit", "--date", "2026-01-31"])
+        .arg(&table)
+        .arg("--into")
+        .arg(&into)
+        .assert();
+    let output = run.success().get_output().clone();
+    let errors = String::from_utf8_lossy(&output.stderr).into_owned();
+    for part in [
+        "gate_capacitance: no table gives it; 0.9 fF/um is assumed",
+        "[inductor]",
+    ] {
+        assert!(errors.contains(part), "{errors}");
+    }
+    let text = std::fs::read_to_string(&into).expect("the new file");
+    let rest = DEMO.split_once("[inductor]").map_or("", |(_, rest)| rest);
+    let whole = format!("{text}\n[inductor]{rest}");
+    let technology =
+        widefront::technology::read_str(&whole, &into).expect("a technology with the demo's rest");
+    assert!(technology.technology.transistors["core"].rating_v > 1.3);
+}
+
+#[test]
+fn law_exit_codes_tell_input_from_running() {
+    let folder = tempfile::tempdir().expect("a folder");
+    let good = written(
+        folder.path(),
+        "t.csv",
+        &transfer(&KELVINS, 0.0, &mut Noise(1)),
+    );
+    let into = folder.path().join("x.toml");
+    let fit = |table: &Path, into: &Path, more: &[&str]| {
+        let mut command = command();
+        command
+            .arg("fit")
+            .arg(table)
+            .arg("--into")
+            .arg(into)
+            .args(more);
+        command.assert()
+    };
+    fit(&folder.path().join("none.csv"), &into, &[]).code(2);
+    fit(&good, &into, &["--rating", "1.32"]).code(2);
+    fit(&good, &into, &["--rating", "oi=1.32V"]).code(2);
+    fit(&good, &into, &["--date", "yesterday"]).code(2);
+    let study = written(folder.path(), "study.toml", "schema = 1\n[stage]\n");
+    fit(&good, &study, &[]).code(2);
+    fit(&good, &folder.path().join("no/folder/x.toml"), &[]).code(1);
+    assert!(!into.exists());
+    fit(&good, &into, &[]).code(0);
+}
+
+#[test]
+fn law_check_of_a_technology_alone_prints_its_figures_of_merit() {
+    let folder = tempfile::tempdir().expect("a folder");
+    let path = written(folder.path(), "demo.toml", DEMO);
+    let run = command()
+        .arg("check")
+        .arg(&path)
+        .args(["--current", "20 mA"])
+        .assert();
+    let output = run.success().get_output().clone();
+    let text = String::from_utf8_lossy(&output.stdout).into_owned();
+    for part in [
+        "20 mA RMS at 2.45 GHz",
+        "r_on C_g",
+        "best W",
+        "nmos",
+        "pmos",
+    ] {
+        assert!(text.contains(part), "{part} not in {text}");
+    }
+}
+
+/// The width of least loss is where both parts of the loss are the same, and any other width loses more.
+#[test]
+fn law_the_best_width_loses_least() {
+    const ROUNDING: f64 = 1e-12;
+    let (swing, current, frequency) = (1.2, 10e-3, 2.45e9);
+    let warm = WarmTransistor::new(&demo(Polarity::Nmos), 300.15);
+    let m = fit::merit(&warm, 300.15, swing, current, frequency);
+    let charge = m.gate_charge_c_m + m.drain_charge_c_m;
+    let loss = |w: f64| current * current * m.resistance_ohm_m / w + frequency * swing * charge * w;
+    assert!((loss(m.best_width_m) / m.least_loss_w - 1.0).abs() < ROUNDING);
+    for factor in [0.5, 0.9, 1.1, 2.0] {
+        assert!(loss(factor * m.best_width_m) > m.least_loss_w);
+    }
+}

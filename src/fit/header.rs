@@ -38,8 +38,11 @@ pub enum Column {
 
 use Column::*;
 
+/// Endings of a column's name with their factors to SI.
+type Units = &'static [(&'static str, f64)];
+
 /// Every column's name, and the units it takes: ending of the name, factor to SI.
-const COLUMNS: [(Column, &str, &[(&str, f64)]); 14] = [
+const COLUMNS: [(Column, &str, Units); 14] = [
     (Device, "device", &[("", 1.0)]),
     (Polarity, "polarity", &[("", 1.0)]),
     (Terminals, "terminals", &[("", 1.0)]),
@@ -74,9 +77,9 @@ const COLUMNS: [(Column, &str, &[(&str, f64)]); 14] = [
     (Area, "area", &[("m2", 1.0), ("mm2", 1e-6), ("um2", 1e-12)]),
     (Perimeter, "perimeter", LENGTHS),
 ];
-const LENGTHS: &[(&str, f64)] = &[("m", 1.0), ("mm", 1e-3), ("um", 1e-6), ("nm", 1e-9)];
+const LENGTHS: Units = &[("m", 1.0), ("mm", 1e-3), ("um", 1e-6), ("nm", 1e-9)];
 /// Volts go without saying, as in most tables of curves.
-const VOLTAGES: &[(&str, f64)] = &[("", 1.0), ("v", 1.0), ("mv", 1e-3)];
+const VOLTAGES: Units = &[("", 1.0), ("v", 1.0), ("mv", 1e-3)];
 
 impl Column {
     /// Name without its unit.
