@@ -569,6 +569,10 @@ fn law_exit_codes_tell_input_from_running() {
     fit(&good, &into, &["--rating", "1.32"]).code(2);
     fit(&good, &into, &["--rating", "oi=1.32V"]).code(2);
     fit(&good, &into, &["--date", "yesterday"]).code(2);
+    // rows of the pair that no fit can use are no reason to keep what a file has
+    let demo = written(folder.path(), "demo.toml", DEMO);
+    fit(&good, &demo, &["--length", "90nm"]).code(2);
+    fit(&good, &demo, &["--from", "1.5V"]).code(2);
     let study = written(folder.path(), "study.toml", "schema = 1\n[stage]\n");
     fit(&good, &study, &[]).code(2);
     fit(&good, &folder.path().join("no/folder/x.toml"), &[]).code(1);

@@ -2,57 +2,18 @@
 
 use super::capacitance::{self, Gate, Junction};
 use super::leakage::{self, Off};
-use super::least_squares::{Minimum, student_95};
+use super::notes::{deviations, notes};
 use super::options::{Options, SHARED_DRAIN_M};
-use super::resistance::{self, Curves, Law, Point, VARIABLES};
-use super::table::{Polarity, Tables};
+use super::points::{self, Curves, Point};
+use super::residual::{CHECK, GATE, JUNCTION, OFF, ON, Residual};
+use super::resistance::{self, Law, VARIABLES};
+use super::section::{Builder, Figure, SECTION, complete};
+use super::table::{Kind, Polarity, Tables};
 use super::write::Existing;
 use super::{FitError, LARGEST_MISS};
-use crate::quantity::{Dimension, Quantity};
+use crate::quantity::Dimension;
 use crate::technology::Transistor;
 use crate::technology::transistor::WarmTransistor;
-
-/// Pairs of figures with a correlation above this are said not to be told apart.
-const STRONG_CORRELATION: f64 = 0.95;
-
-/// A figure to be written.
-#[derive(Debug, Clone, PartialEq)]
-pub struct Figure {
-    /// Key in the technology file.
-    pub key: &'static str,
-    /// SI, as the file will hold it.
-    pub value: f64,
-    /// As the file will hold it.
-    pub text: String,
-    /// Said after it: error or assumption.
-    pub note: String,
-    /// Half of the interval that holds the true value 95 times in 100, SI.
-    pub error: Option<f64>,
-    /// No table gave it.
-    pub assumed: bool,
-}
-
-/// A measured point against the model.
-#[derive(Debug, Clone, PartialEq)]
-pub struct Residual {
-    /// What was measured, with its SI unit.
-    pub quantity: &'static str,
-    /// K.
-    pub temperature_k: f64,
-    /// V: V_GS, V_DS or reverse voltage.
-    pub voltage_v: f64,
-    /// SI.
-    pub measured: f64,
-    /// SI.
-    pub model: f64,
-}
-
-impl Residual {
-    /// Model over measured, less 1.
-    pub fn error(&self) -> f64 {
-        self.model / self.measured - 1.0
-    }
-}
 
 /// A device and polarity after its fit.
 #[derive(Debug, Clone, PartialEq)]
@@ -91,96 +52,6 @@ pub(super) struct Context<'c> {
     pub from_v: f64,
 }
 
-/// The keys of a section in their order, what they measure (`None`: a bare number), and a figure to assume where no
-/// table and no file gives one: common for gates of 100 nm, and said to be assumed wherever it is used.
-const SECTION: [(&str, Option<Dimension>, Option<f64>); 14] = [
-    ("transconductance", Some(Dimension::Transconductance), None),
-    ("length", Some(Dimension::Length), None),
-    ("threshold", Some(Dimension::Voltage), None),
-    ("threshold_drift", Some(Dimension::VoltageDrift), None),
-    ("slope", None, None),
-    ("degradation", Some(Dimension::PerVoltage), None),
-    ("mobility_exponent", None, None),
-    ("access_resistance", Some(Dimension::ResistanceLength), None),
-    (
-        "gate_capacitance",
-        Some(Dimension::CapacitancePerLength),
-        Some(0.9e-9),
-    ),
-    (
-        "overlap_capacitance",
-        Some(Dimension::CapacitancePerLength),
-        Some(0.3e-9),
-    ),
-    (
-        "junction_capacitance",
-        Some(Dimension::CapacitancePerLength),
-        Some(0.5e-9),
-    ),
-    ("junction_grading", None, Some(0.4)),
-    ("junction_potential", Some(Dimension::Voltage), Some(0.8)),
-    ("off_current", Some(Dimension::CurrentPerLength), Some(1e-3)),
-];
-
-/// A value as text of the file, and the value that the text holds.
-fn written(value: f64, dimension: Option<Dimension>) -> (String, f64) {
-    match dimension {
-        Some(dimension) => {
-            let text = dimension.show(value);
-            let held = Quantity::parse(&text, dimension).unwrap_or(value);
-            (format!("\"{text}\""), held)
-        }
-        None => {
-            let held = format!("{value:.4}").parse().unwrap_or(value);
-            // TOML wants a point in a number that is not whole by nature
-            (format!("{held:?}"), held)
-        }
-    }
-}
-
-/// An error with two digits.
-fn rounded(error: f64, dimension: Option<Dimension>) -> String {
-    let two: f64 = format!("{error:.1e}").parse().unwrap_or(error);
-    match dimension {
-        Some(dimension) => dimension.show(two),
-        None => format!("{two}"),
-    }
-}
-
-#[derive(Default)]
-struct Builder {
-    figures: Vec<Figure>,
-}
-
-impl Builder {
-    fn add(&mut self, key: &'static str, value: f64, error: Option<f64>, note: Option<String>) {
-        let dimension = SECTION
-            .iter()
-            .find(|(k, ..)| *k == key)
-            .and_then(|(_, d, _)| *d);
-        let (text, value) = written(value, dimension);
-        let note = note.unwrap_or_else(|| match error {
-            Some(error) => format!("+- {}", rounded(error, dimension)),
-            None => String::new(),
-        });
-        self.figures.push(Figure {
-            key,
-            value,
-            text,
-            note,
-            error,
-            assumed: false,
-        });
-    }
-
-    fn value(&self, key: &str) -> Option<f64> {
-        self.figures
-            .iter()
-            .find(|figure| figure.key == key)
-            .map(|figure| figure.value)
-    }
-}
-
 /// Fits what the tables give; the rest is kept from the file, or assumed and said so.
 pub(super) fn fit(context: &Context<'_>, polarity: Polarity) -> Result<FittedDevice, FitError> {
     let Context {
@@ -206,9 +77,13 @@ pub(super) fn fit(context: &Context<'_>, polarity: Polarity) -> Result<FittedDev
     };
     let mut builder = Builder::default();
     let length = options.length_m.of(name, Some(polarity.name()));
-    match resistance::collect(tables, device, polarity, length, from_v)? {
+    match points::collect(tables, device, polarity, length, from_v)? {
         Some(curves) => on_resistance(context, &mut out, &mut builder, curves)?,
-        None if existing.has_all(name, polarity, SECTION.iter().take(8).map(|(key, ..)| *key)) => {}
+        None if tables
+            .rows(Kind::Current, device, polarity)
+            .next()
+            .is_none()
+            && existing.has_all(name, polarity, SECTION.iter().take(8).map(|(key, ..)| *key)) => {}
         None => {
             let length = length.map_or_else(String::new, |l| {
                 format!(", length {}", Dimension::Length.show(l))
@@ -245,16 +120,8 @@ pub(super) fn fit(context: &Context<'_>, polarity: Polarity) -> Result<FittedDev
     Ok(out)
 }
 
-/// Names of what is measured.
-pub const ON: &str = "on_resistance_ohm_m";
-/// Output curves, where transfer curves were fitted.
-pub const CHECK: &str = "on_resistance_of_output_ohm_m";
-/// Mean over a swing.
-pub const GATE: &str = "gate_and_overlap_capacitance_f_m";
-/// Of the structures.
-pub const JUNCTION: &str = "junction_capacitance_f";
-/// At V_GS = 0.
-pub const OFF: &str = "off_current_a_m";
+/// Between the bounds of a slope.
+const SLOPE_SPAN: f64 = 0.6;
 
 fn on_resistance(
     context: &Context<'_>,
@@ -311,6 +178,11 @@ fn on_resistance(
         );
         if let Some(figure) = builder.figures.last_mut() {
             figure.assumed = assumed;
+            let untold = key == "slope" && figure.error.is_some_and(|e| e > SLOPE_SPAN);
+            if untold {
+                figure.note =
+                    "any from 1 to 1.6 would do: the on-resistances do not tell it".to_owned();
+            }
             if minimum.at_bound[k] {
                 figure.note.push_str(", at a bound");
             }
@@ -347,86 +219,6 @@ fn on_resistance(
     ));
     out.curves = Some(curves);
     Ok(())
-}
-
-/// Half widths of the intervals that hold a variable 95 times in 100.
-fn deviations<const N: usize>(minimum: &Minimum<N>) -> Option<[f64; N]> {
-    let covariance = minimum.covariance?;
-    let t = student_95(minimum.freedom);
-    Some(std::array::from_fn(|k| {
-        t * covariance[k][k].max(0.0).sqrt()
-    }))
-}
-
-fn notes(out: &mut FittedDevice, curves: &Curves, minimum: &Minimum<VARIABLES>, single: bool) {
-    let (low, high) = curves.range_v();
-    let kelvins: Vec<String> = curves
-        .temperatures_k
-        .iter()
-        .map(|k| format!("{k:.2}"))
-        .collect();
-    out.notes.push(format!(
-        "fitted: gate length {}, V_GS {low:.3} V to {high:.3} V, {} K, {} points; {} of 8 starts agreed",
-        Dimension::Length.show(curves.length_m),
-        kelvins.join(", "),
-        curves.points.len(),
-        minimum.starts_agreed
-    ));
-    if !curves.other_lengths_m.is_empty() {
-        let others: Vec<String> = curves
-            .other_lengths_m
-            .iter()
-            .map(|l| Dimension::Length.show(*l))
-            .collect();
-        out.notes.push(format!(
-            "other lengths in the tables, not used: {}",
-            others.join(", ")
-        ));
-    }
-    if single {
-        let at = curves.temperatures_k.first().copied().unwrap_or(0.0);
-        out.warnings.push(format!(
-            "measured at {at:.2} K alone: threshold_drift and mobility_exponent are assumed, {} and {}",
-            Dimension::VoltageDrift.show(resistance::ASSUMED_DRIFT_V_K),
-            resistance::ASSUMED_EXPONENT
-        ));
-    } else if !curves
-        .temperatures_k
-        .iter()
-        .any(|k| resistance::is_reference(*k))
-    {
-        out.notes
-            .push("no measurement at 300.15 K: the figures there lie between others".to_owned());
-    }
-    let bounds: Vec<&str> = (0..VARIABLES)
-        .filter(|&k| minimum.at_bound[k])
-        .map(|k| resistance::KEYS[k])
-        .collect();
-    if !bounds.is_empty() {
-        out.notes.push(format!(
-            "at a bound of what is physical: {}",
-            bounds.join(", ")
-        ));
-    }
-    match &minimum.covariance {
-        None => out
-            .warnings
-            .push("the points do not tell the figures apart: no errors can be given".to_owned()),
-        Some(covariance) => {
-            for a in 0..VARIABLES {
-                for b in 0..a {
-                    let rho = covariance[a][b] / (covariance[a][a] * covariance[b][b]).sqrt();
-                    if rho.abs() > STRONG_CORRELATION {
-                        out.notes.push(format!(
-                            "not told apart: {} and {} (correlation {rho:+.3})",
-                            resistance::KEYS[b],
-                            resistance::KEYS[a]
-                        ));
-                    }
-                }
-            }
-        }
-    }
 }
 
 fn capacitances(
@@ -601,40 +393,4 @@ fn leakage(context: &Context<'_>, out: &mut FittedDevice, builder: &mut Builder)
         });
     }
     out.off = Some(off);
-}
-
-/// Keeps or assumes what no table gave, and sorts the figures as a section has them.
-fn complete(context: &Context<'_>, out: &mut FittedDevice, mut builder: Builder) {
-    for (key, _, assumed) in SECTION {
-        if builder.value(key).is_some() {
-            continue;
-        }
-        match assumed {
-            _ if context
-                .existing
-                .has_all(context.name, out.polarity, [key].into_iter()) =>
-            {
-                out.kept.push(key)
-            }
-            Some(value) => {
-                builder.add(
-                    key,
-                    value,
-                    None,
-                    Some("assumed: no table gives it".to_owned()),
-                );
-                if let Some(figure) = builder.figures.last_mut() {
-                    figure.assumed = true;
-                    out.warnings.push(format!(
-                        "{key}: no table gives it; {} is assumed",
-                        figure.text.trim_matches('"')
-                    ));
-                }
-            }
-            None => {}
-        }
-    }
-    let place = |key: &str| SECTION.iter().position(|(k, ..)| *k == key);
-    builder.figures.sort_by_key(|figure| place(figure.key));
-    out.figures = builder.figures;
 }

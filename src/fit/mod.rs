@@ -8,19 +8,25 @@ mod header;
 mod leakage;
 mod least_squares;
 mod merit;
+mod notes;
 mod options;
+mod points;
 mod report;
+mod residual;
 mod resistance;
+mod section;
 mod table;
 mod write;
 
 pub use capacitance::{Gate, Junction, NoCapacitance};
-pub use device::{Figure, FittedDevice, Residual};
+pub use device::FittedDevice;
 pub use leakage::Off;
 pub use merit::{Merit, is_technology, merit, merits};
 pub use options::{Options, PerDevice, civil_date};
+pub use points::{Curves, Point};
 pub use report::{report, residuals_csv};
-pub use resistance::{Curves, Point};
+pub use residual::Residual;
+pub use section::Figure;
 pub use table::{Kind, Polarity, Row, Tables, read};
 pub use write::{Existing, merge};
 
@@ -65,7 +71,7 @@ pub enum FitError {
     Faults(#[from] Faults),
     /// No table of a polarity and no figures of it in the file.
     #[error(
-        "{device} {polarity}: read no on-resistance (0 < V_DS <= 0.1 V, V_GS from {from} V up{length}), allowed transfer or output curves of both polarities\n  help: add a table with them; a file that has [transistor.{device}.{polarity}] already keeps what it has"
+        "{device} {polarity}: read no on-resistance (0 < V_DS <= 0.1 V, V_GS from {from} V up{length}), allowed transfer or output curves of both polarities\n  help: add a table with them, or change --length and --from; a polarity without any current table keeps what the file has"
     )]
     NoCurves {
         /// The pair.

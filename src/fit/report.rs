@@ -1,6 +1,7 @@
 //! What came of a fit, as a table for people and as CSV.
 
-use super::device::{FittedDevice, GATE, JUNCTION, OFF, ON, Residual};
+use super::device::FittedDevice;
+use super::residual::{GATE, JUNCTION, OFF, ON, Residual};
 use super::{FittedPair, Given, Tables};
 use crate::quantity::format as engineering;
 use std::fmt::Write;
