@@ -3,6 +3,7 @@
 pub mod budget;
 pub mod cli;
 pub mod evaluate;
+pub mod fit;
 pub mod numerics;
 pub mod quantity;
 pub mod report;

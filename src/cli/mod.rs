@@ -2,6 +2,7 @@
 
 mod check;
 mod evaluate;
+mod fit;
 mod search;
 
 use crate::evaluate::Setup;
@@ -22,11 +23,19 @@ struct Arguments {
 
 #[derive(Debug, Subcommand)]
 enum Command {
-    /// Read and validate a study; print what it resolves to.
+    /// Read and validate a study, or a technology alone; print what it resolves to.
     Check {
-        /// The study file.
+        /// The study or technology file.
         study: PathBuf,
+        /// Of a technology: RMS current that the width of least loss is for.
+        #[arg(long, default_value = "10 mA")]
+        current: String,
+        /// Of a technology: frequency that the width of least loss is for.
+        #[arg(long, default_value = "2.45 GHz")]
+        frequency: String,
     },
+    /// Fit a technology's transistors to measured or simulated tables.
+    Fit(fit::FitArguments),
     /// Evaluate the design of a study.
     Evaluate {
         /// The study file.
@@ -62,7 +71,17 @@ impl From<Faults> for Failure {
 /// Runs the command line and gives its exit code.
 pub fn run() -> ExitCode {
     let result = match Arguments::parse().command {
-        Command::Check { study } => check::run(&study),
+        Command::Check {
+            study,
+            current,
+            frequency,
+        } => match std::fs::read_to_string(&study) {
+            Ok(text) if crate::fit::is_technology(&text) => {
+                fit::merits(&study, &text, &current, &frequency)
+            }
+            _ => check::run(&study),
+        },
+        Command::Fit(arguments) => fit::run(&arguments),
         Command::Evaluate { study, set, json } => evaluate::run(&study, &set, json),
         Command::Search(arguments) => search::run(&arguments),
         Command::Join(arguments) => search::join(&arguments),
