@@ -136,3 +136,66 @@ fn subtract_four(rows: [Scaled<'_>; PANEL], a_re: &mut [f64], a_im: &mut [f64]) 
         a_im[j] -= im01 + im23;
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// Growth is bounded, so a few tens of roundings suffice at these sizes.
+    const ROUNDING: f64 = 1e-12;
+
+    /// Last pivot of the full matrix by plain elimination, row by row.
+    fn plain(n: usize, entry: &impl Fn(usize, usize) -> (f64, f64)) -> (f64, f64) {
+        let mut a: Vec<Vec<_>> = (0..n)
+            .map(|i| (0..n).map(|j| entry(i.min(j), i.max(j))).collect())
+            .collect();
+        for k in 0..n - 1 {
+            let (done, rest) = a.split_at_mut(k + 1);
+            let pivot = &done[k];
+            for row in rest {
+                let factor = product(row[k], reciprocal(pivot[k]));
+                for (entry, above) in row.iter_mut().zip(pivot).skip(k) {
+                    let change = product(factor, *above);
+                    *entry = (entry.0 - change.0, entry.1 - change.1);
+                }
+            }
+        }
+        a[n - 1][n - 1]
+    }
+
+    #[test]
+    fn law_blocked_elimination_is_plain_elimination() {
+        for n in [1, 2, 4, 5, 6, 8, 9, 23] {
+            let entry = |i: usize, j: usize| {
+                let mix = ((i * 7 + j * 13 + i * j) % 11) as f64 / 11.0;
+                let re = if i == j { 2.0 + mix } else { 0.1 * mix };
+                (re, 3.0 / (1.0 + (j - i) as f64) + mix)
+            };
+            let mut matrix = ComplexSymmetric::zeros(n);
+            for i in 0..n {
+                for j in i..n {
+                    let (re, im) = entry(i, j);
+                    matrix.set(i, j, re, im);
+                }
+            }
+            assert_eq!(matrix.size(), n);
+            let (re, im) = matrix.last_pivot();
+            let (plain_re, plain_im) = plain(n, &entry);
+            assert!((re - plain_re).abs() < ROUNDING && (im - plain_im).abs() < ROUNDING);
+        }
+    }
+
+    #[test]
+    fn law_bordering_adds_branches_in_parallel() {
+        // Branches of 1 + 2j and 3 Ω with one voltage, one current: the last pivot is their parallel impedance.
+        let mut matrix = ComplexSymmetric::zeros(4);
+        matrix.set(0, 0, 1.0, 2.0);
+        matrix.set(1, 1, 3.0, 0.0);
+        matrix.set(0, 2, 1.0, 0.0);
+        matrix.set(1, 2, 1.0, 0.0);
+        matrix.set(2, 3, 1.0, 0.0);
+        let (re, im) = matrix.last_pivot();
+        // (1+2j)·3/(4+2j) = (3+6j)(4−2j)/20 = (24 + 18j)/20.
+        assert!((re - 1.2).abs() < ROUNDING && (im - 0.9).abs() < ROUNDING);
+    }
+}
