@@ -1,8 +1,9 @@
 //! The Pareto front of one cell: every slice traced by warm-started constrained optimisation.
 //!
 //! The front is the set of best efficiencies under targets of output power and area (the ε-constraint method: Haimes,
-//! Lasdon and Wismer 1971). Columns of area targets run from the least area to that of the most power; in each the
-//! output-power targets climb from that of the best efficiency to the highest. Each solve starts from its neighbour.
+//! Lasdon and Wismer 1971) on a grid that all slices share. A tighter target cannot be met better than a looser one, so
+//! what a slice reached before bounds what it can reach: at each target slices are taken by their bound, and those whose
+//! bound is below what is found already are dropped.
 
 use super::Context;
 use super::front::{Costs, costs, non_dominated, spread};
@@ -15,18 +16,16 @@ use crate::study::Objective;
 use argmin::core::Executor;
 use std::sync::atomic::{AtomicBool, Ordering};
 
-/// Levels of a traced front along output power and along area.
-const LEVELS: usize = 14;
-/// Levels when slices are compared with one another.
-const SCREENING_LEVELS: usize = 3;
-/// A slice stays while it is within this of the best in ln efficiency at some screening target.
-const SCREENING_SLACK: f64 = 0.03;
+/// Levels of the targets along output power and along area.
+const LEVELS: usize = 16;
 /// Points of a cell's front are no closer than this in every objective, of the front's span.
 const SPACING: f64 = 0.25 / LEVELS as f64;
 /// First-order residual asked of a solve.
 const RESIDUAL: f64 = 1e-6;
 /// Residual above which a front point is marked as not certified.
 pub const CERTIFIED_RESIDUAL: f64 = 1e-4;
+/// A target this far past a slice's extreme (relative) is out of its reach: more than the solves' tolerance.
+const EXTREME_SLACK: f64 = 1e-4;
 /// Starts of a slice's first solve besides the middle.
 const RESTARTS: usize = 3;
 const MOST_ITERATIONS: u64 = 80;
@@ -70,6 +69,7 @@ pub fn search_cell(context: &Context<'_>, cell: &Cell, stop: &AtomicBool) -> Opt
         slices: &slices,
         evaluations: 0,
         found: Vec::new(),
+        reached: slices.iter().map(|_| Reached::default()).collect(),
         stop,
     };
     tracer.run(cell);
@@ -82,42 +82,200 @@ struct Tracer<'a> {
     slices: &'a [Slice],
     evaluations: u64,
     found: Vec<Solved>,
+    /// What each slice is known to reach.
+    reached: Vec<Reached>,
     stop: &'a AtomicBool,
 }
 
-/// The corners of a slice's front.
-struct Corners {
-    efficiency: Solved,
-    power: Option<Solved>,
-    area: Option<Solved>,
+/// Targets in logarithms: output power at least, area at most; none = no target.
+#[derive(Debug, Clone, Copy, PartialEq)]
+struct Target {
+    least_power: f64,
+    most_area: f64,
+}
+
+const NO_TARGET: Target = Target {
+    least_power: f64::NEG_INFINITY,
+    most_area: f64::INFINITY,
+};
+
+impl Target {
+    /// Whether meeting `self` meets `other` too.
+    fn implies(&self, other: &Self) -> bool {
+        self.least_power >= other.least_power && self.most_area <= other.most_area
+    }
+
+    fn goal(&self, best: Objective) -> Goal {
+        Goal {
+            best,
+            least_ln_power: self.least_power.is_finite().then_some(self.least_power),
+            most_ln_area: self.most_area.is_finite().then_some(self.most_area),
+        }
+    }
+}
+
+/// Solved targets of one slice with their scores, minus infinity where nothing meets the target.
+#[derive(Debug, Default)]
+struct Reached {
+    scores: Vec<(Target, f64)>,
+    solved: Vec<Solved>,
+    /// ln W above which nothing is to be had in the column at hand.
+    most_power: f64,
+}
+
+impl Reached {
+    /// No design of the slice that meets `target` scores above this.
+    fn bound(&self, target: &Target) -> f64 {
+        self.scores
+            .iter()
+            .filter(|(looser, _)| target.implies(looser))
+            .map(|s| s.1)
+            .fold(f64::INFINITY, f64::min)
+    }
+
+    /// The solved point nearest to a target, to start from.
+    fn nearest(&self, target: &Target) -> Option<&Solved> {
+        let distance = |s: &Solved| {
+            let off = |wanted: f64, has: f64| {
+                if wanted.is_finite() {
+                    (wanted - has).abs()
+                } else {
+                    0.0
+                }
+            };
+            off(target.least_power, s.merits[1]) + off(target.most_area, s.merits[2])
+        };
+        self.solved
+            .iter()
+            .min_by(|a, b| distance(a).total_cmp(&distance(b)))
+    }
 }
 
 impl Tracer<'_> {
     fn run(&mut self, cell: &Cell) {
         let trades = |o| self.context.objectives.contains(&o);
-        let (power, area) = (trades(Objective::OutputPower), trades(Objective::Area));
-        let corners: Vec<(usize, Corners)> = (0..self.slices.len())
-            .filter_map(|slice| Some((slice, self.corners(cell, slice, power, area)?)))
-            .collect();
-        for (_, c) in &corners {
-            self.found.push(c.efficiency.clone());
-            self.found.extend(c.power.iter().chain(&c.area).cloned());
+        let primary = [
+            Objective::Efficiency,
+            Objective::OutputPower,
+            Objective::Area,
+        ]
+        .into_iter()
+        .find(|&o| trades(o))
+        .unwrap_or(Objective::Efficiency);
+        let targets_power = trades(Objective::OutputPower) && primary != Objective::OutputPower;
+        let targets_area = trades(Objective::Area) && primary != Objective::Area;
+        for slice in 0..self.slices.len() {
+            self.corners(cell, slice, primary, targets_power, targets_area);
         }
-        if !(power || area) {
+        if !(targets_power || targets_area) {
             return;
         }
-        for (slice, corners) in &corners {
-            self.trace(*slice, corners, SCREENING_LEVELS);
-        }
-        let screened = std::mem::take(&mut self.found);
-        let promising: Vec<&(usize, Corners)> = corners
+        // The columns span what the corners do.
+        let (least_area, most_area) = self
+            .found
             .iter()
-            .filter(|(slice, _)| contributes(&screened, *slice, self.context.objectives))
-            .collect();
-        self.found = screened;
-        for (slice, corners) in promising {
-            self.trace(*slice, corners, LEVELS);
+            .map(|s| s.merits[2])
+            .fold((f64::INFINITY, f64::NEG_INFINITY), |(low, high), v| {
+                (low.min(v), high.max(v))
+            });
+        let level = |low: f64, high: f64, k: usize| low + (high - low) * k as f64 / LEVELS as f64;
+        let areas: Vec<f64> = if targets_area {
+            (1..=LEVELS)
+                .rev()
+                .map(|k| level(least_area, most_area, k))
+                .collect()
+        } else {
+            vec![f64::INFINITY]
+        };
+        for area in areas {
+            let column = Target {
+                most_area: area,
+                ..NO_TARGET
+            };
+            let first = self.best_at(&column, primary);
+            if !targets_power {
+                continue;
+            }
+            let Some(first) = first else { continue };
+            let Some(most_power) = self.strongest(&column) else {
+                continue;
+            };
+            for k in 1..LEVELS {
+                let target = Target {
+                    least_power: level(first.merits[1], most_power, k),
+                    ..column
+                };
+                self.best_at(&target, primary);
+            }
         }
+    }
+
+    /// The best design of any slice that meets a target. Slices are taken by what they may still reach.
+    fn best_at(&mut self, target: &Target, primary: Objective) -> Option<Solved> {
+        let mut order: Vec<(f64, usize)> = (0..self.slices.len())
+            .map(|slice| (self.reached[slice].bound(target), slice))
+            .filter(|(bound, _)| *bound > f64::NEG_INFINITY)
+            .collect();
+        order.sort_by(|a, b| b.0.total_cmp(&a.0).then(a.1.cmp(&b.1)));
+        let mut best: Option<Solved> = None;
+        for (bound, slice) in order {
+            if best.as_ref().is_some_and(|b| score(b, primary) >= bound) {
+                break;
+            }
+            let Some(start) = self.reached[slice].nearest(target).cloned() else {
+                continue;
+            };
+            let goal = target.goal(primary);
+            let mut solved = self.solve(slice, goal, start.point, &start.curvature);
+            if solved
+                .as_ref()
+                .is_none_or(|s| s.residual > CERTIFIED_RESIDUAL)
+            {
+                let again = self.solve(slice, goal, start.point, &no_curvature());
+                solved = better(solved, again, primary);
+            }
+            let reached = solved
+                .as_ref()
+                .map_or(f64::NEG_INFINITY, |s| score(s, primary));
+            self.reached[slice].scores.push((*target, reached));
+            if let Some(solved) = &solved {
+                self.reached[slice].solved.push(solved.clone());
+                self.found.push(solved.clone());
+            }
+            best = better(best, solved, primary);
+        }
+        best
+    }
+
+    /// The most output power of any slice under an area target.
+    fn strongest(&mut self, column: &Target) -> Option<f64> {
+        let mut order: Vec<(f64, usize)> = (0..self.slices.len())
+            .filter(|&slice| self.reached[slice].bound(column) > f64::NEG_INFINITY)
+            .map(|slice| (self.reached[slice].most_power, slice))
+            .collect();
+        order.sort_by(|a, b| b.0.total_cmp(&a.0).then(a.1.cmp(&b.1)));
+        let mut best: Option<f64> = None;
+        for (limit, slice) in order {
+            if best.is_some_and(|b| b >= limit) {
+                break;
+            }
+            let target = Target {
+                least_power: limit,
+                ..*column
+            };
+            let Some(start) = self.reached[slice].nearest(&target).cloned() else {
+                continue;
+            };
+            let goal = column.goal(Objective::OutputPower);
+            if let Some(solved) = self.solve(slice, goal, start.point, &no_curvature()) {
+                // Columns narrow, so this holds for all that follow.
+                self.reached[slice].most_power = solved.merits[1] + EXTREME_SLACK;
+                best = Some(best.map_or(solved.merits[1], |b| b.max(solved.merits[1])));
+                self.reached[slice].solved.push(solved.clone());
+                self.found.push(solved);
+            }
+        }
+        best
     }
 
     fn problem<'b>(&'b self, slice: usize, goal: Goal) -> Option<SliceProblem<'b>> {
@@ -171,131 +329,53 @@ impl Tracer<'_> {
         })
     }
 
-    fn corners(&mut self, cell: &Cell, slice: usize, power: bool, area: bool) -> Option<Corners> {
-        let goal = |best| Goal {
-            best,
-            least_ln_power: None,
-            most_ln_area: None,
-        };
-        let first = if self.context.objectives.contains(&Objective::Efficiency) {
-            Objective::Efficiency
-        } else if power {
-            Objective::OutputPower
-        } else {
-            Objective::Area
-        };
+    /// The best of a slice in the primary objective, from several starts, and its extremes in the others.
+    fn corners(&mut self, cell: &Cell, slice: usize, primary: Objective, power: bool, area: bool) {
+        let axes = self.slices[slice].axes.len();
         let mut best: Option<Solved> = None;
         for start in 0..=RESTARTS {
-            let point = self
-                .context
-                .start(cell, slice, start, self.slices[slice].axes.len());
-            let solved = self.solve(slice, goal(first), point, &no_curvature());
-            best = better(best, solved, first);
-            // No start of several found the feasible region: the slice has none to speak of.
+            let point = self.context.start(cell, slice, start, axes);
+            let solved = self.solve(slice, NO_TARGET.goal(primary), point, &no_curvature());
+            best = better(best, solved, primary);
         }
-        let efficiency = best?;
-        let extreme = |tracer: &mut Self, wanted: bool, objective| {
-            if !wanted {
-                return None;
-            }
-            let warm = tracer.solve(slice, goal(objective), efficiency.point, &no_curvature());
-            let point = tracer
-                .context
-                .start(cell, slice, 1, tracer.slices[slice].axes.len());
-            let cold = tracer.solve(slice, goal(objective), point, &no_curvature());
-            better(warm, cold, objective)
-        };
-        let power = extreme(self, power, Objective::OutputPower);
-        let area = extreme(self, area, Objective::Area);
-        Some(Corners {
-            efficiency,
-            power,
-            area,
-        })
-    }
-
-    /// Traces a slice with `levels` columns of `levels` targets.
-    fn trace(&mut self, slice: usize, corners: &Corners, levels: usize) {
-        let top = corners
-            .power
-            .iter()
-            .chain([&corners.efficiency])
-            .map(|s| s.merits[2])
-            .fold(f64::NEG_INFINITY, f64::max);
-        let Some(least) = &corners.area else {
-            self.column(slice, corners, None, &corners.efficiency, levels);
+        let reached = best
+            .as_ref()
+            .map_or(f64::NEG_INFINITY, |s| score(s, primary));
+        self.reached[slice].scores.push((NO_TARGET, reached));
+        let Some(best) = best else {
             return;
         };
-        let bottom = least.merits[2];
-        let mut start = corners.efficiency.clone();
-        for level in (1..=levels).rev() {
-            let most = bottom + (top - bottom) * level as f64 / levels as f64;
-            match self.column(slice, corners, Some(most), &start, levels) {
-                Some(next) => start = next,
-                // The neighbour led nowhere: come from the other end.
-                None => {
-                    if let Some(next) = self.column(slice, corners, Some(most), least, levels) {
-                        start = next;
-                    }
-                }
+        let mut corners = vec![best.clone()];
+        for (wanted, objective) in [(power, Objective::OutputPower), (area, Objective::Area)] {
+            if !wanted {
+                continue;
             }
-        }
-    }
-
-    /// One column: the best efficiency under the area target, then rising output power. Returns its first point.
-    fn column(
-        &mut self,
-        slice: usize,
-        corners: &Corners,
-        most_ln_area: Option<f64>,
-        start: &Solved,
-        levels: usize,
-    ) -> Option<Solved> {
-        let goal = |best, least_ln_power| Goal {
-            best,
-            least_ln_power,
-            most_ln_area,
-        };
-        let trades_efficiency = self.context.objectives.contains(&Objective::Efficiency);
-        let best = if trades_efficiency {
-            Objective::Efficiency
-        } else {
-            Objective::Area
-        };
-        let first = self.solve(slice, goal(best, None), start.point, &start.curvature)?;
-        self.found.push(first.clone());
-        let Some(power) = &corners.power else {
-            return Some(first);
-        };
-        let strongest = self.solve(
-            slice,
-            goal(Objective::OutputPower, None),
-            first.point,
-            &no_curvature(),
-        );
-        let strongest = better(
-            strongest,
-            Some(power.clone()).filter(|p| most_ln_area.is_none_or(|a| p.merits[2] <= a)),
-            Objective::OutputPower,
-        )?;
-        let (low, high) = (first.merits[1], strongest.merits[1]);
-        self.found.push(strongest.clone());
-        if high <= low {
-            return Some(first);
-        }
-        let mut neighbour = first.clone();
-        for level in 1..levels {
-            let target = low + (high - low) * level as f64 / levels as f64;
-            let goal = goal(best, Some(target));
-            let solved = self
-                .solve(slice, goal, neighbour.point, &neighbour.curvature)
-                .or_else(|| self.solve(slice, goal, strongest.point, &no_curvature()));
-            if let Some(solved) = solved {
-                self.found.push(solved.clone());
-                neighbour = solved;
+            let goal = NO_TARGET.goal(objective);
+            let warm = self.solve(slice, goal, best.point, &no_curvature());
+            let point = self.context.start(cell, slice, 1, axes);
+            let cold = self.solve(slice, goal, point, &no_curvature());
+            let Some(corner) = better(warm, cold, objective) else {
+                continue;
+            };
+            // Beyond its own extreme a slice reaches nothing.
+            let beyond = match objective {
+                Objective::OutputPower => Target {
+                    least_power: corner.merits[1] + EXTREME_SLACK,
+                    ..NO_TARGET
+                },
+                _ => Target {
+                    most_area: corner.merits[2] - EXTREME_SLACK,
+                    ..NO_TARGET
+                },
+            };
+            self.reached[slice].scores.push((beyond, f64::NEG_INFINITY));
+            if objective == Objective::OutputPower {
+                self.reached[slice].most_power = corner.merits[1] + EXTREME_SLACK;
             }
+            corners.push(corner);
         }
-        Some(first)
+        self.found.extend(corners.iter().cloned());
+        self.reached[slice].solved.extend(corners);
     }
 
     /// Filters what was found, evaluates it exactly, filters and spreads again.
@@ -355,29 +435,20 @@ pub fn point_costs(objectives: &[Objective], point: &FrontPoint) -> Costs {
         })
 }
 
-fn better(a: Option<Solved>, b: Option<Solved>, by: Objective) -> Option<Solved> {
-    let score = |s: &Solved| match by {
-        Objective::Efficiency => s.merits[0],
-        Objective::OutputPower => s.merits[1],
-        Objective::Area => -s.merits[2],
-    };
-    match (a, b) {
-        (Some(a), Some(b)) => Some(if score(&b) > score(&a) { b } else { a }),
-        (a, b) => a.or(b),
+/// What is to be made large when `by` is the primary objective.
+fn score(solved: &Solved, by: Objective) -> f64 {
+    match by {
+        Objective::Efficiency => solved.merits[0],
+        Objective::OutputPower => solved.merits[1],
+        Objective::Area => -solved.merits[2],
     }
 }
 
-/// Whether some screening point of `slice` is not dominated by other slices' with the slack to spare.
-fn contributes(found: &[Solved], slice: usize, objectives: &[Objective]) -> bool {
-    let key =
-        |m: &[f64; 3], slack: f64| costs(objectives, m[0] + slack, m[1] + slack, m[2] - slack);
-    found.iter().filter(|s| s.slice == slice).any(|own| {
-        let eased = key(&own.merits, SCREENING_SLACK);
-        !found.iter().filter(|s| s.slice != slice).any(|other| {
-            let theirs = key(&other.merits, 0.0);
-            theirs.iter().zip(&eased).all(|(t, e)| t <= e)
-        })
-    })
+fn better(a: Option<Solved>, b: Option<Solved>, by: Objective) -> Option<Solved> {
+    match (a, b) {
+        (Some(a), Some(b)) => Some(if score(&b, by) > score(&a, by) { b } else { a }),
+        (a, b) => a.or(b),
+    }
 }
 
 /// The middle of the box, or a seeded point of it, residual voltages at their most likely place: all of the supply.
