@@ -17,7 +17,7 @@ use argmin::core::Executor;
 use std::sync::atomic::{AtomicBool, Ordering};
 
 /// Levels of the targets along output power and along area.
-const LEVELS: usize = 16;
+const LEVELS: usize = 20;
 /// Points of a cell's front are no closer than this in every objective, of the front's span.
 const SPACING: f64 = 0.25 / LEVELS as f64;
 /// First-order residual asked of a solve.
@@ -164,9 +164,10 @@ impl Tracer<'_> {
         .unwrap_or(Objective::Efficiency);
         let targets_power = trades(Objective::OutputPower) && primary != Objective::OutputPower;
         let targets_area = trades(Objective::Area) && primary != Objective::Area;
-        for slice in 0..self.slices.len() {
-            self.corners(cell, slice, primary, targets_power, targets_area);
-        }
+        let mut wanted = vec![primary];
+        wanted.extend(targets_power.then_some(Objective::OutputPower));
+        wanted.extend(targets_area.then_some(Objective::Area));
+        self.corners(cell, &wanted);
         if !(targets_power || targets_area) {
             return;
         }
@@ -329,53 +330,82 @@ impl Tracer<'_> {
         })
     }
 
-    /// The best of a slice in the primary objective, from several starts, and its extremes in the others.
-    fn corners(&mut self, cell: &Cell, slice: usize, primary: Objective, power: bool, area: bool) {
-        let axes = self.slices[slice].axes.len();
-        let mut best: Option<Solved> = None;
-        for start in 0..=RESTARTS {
-            let point = self.context.start(cell, slice, start, axes);
-            let solved = self.solve(slice, NO_TARGET.goal(primary), point, &no_curvature());
-            best = better(best, solved, primary);
-        }
-        let reached = best
-            .as_ref()
-            .map_or(f64::NEG_INFINITY, |s| score(s, primary));
-        self.reached[slice].scores.push((NO_TARGET, reached));
-        let Some(best) = best else {
-            return;
-        };
-        let mut corners = vec![best.clone()];
-        for (wanted, objective) in [(power, Objective::OutputPower), (area, Objective::Area)] {
-            if !wanted {
-                continue;
+    /// The best design of every slice in each objective. There is more than one hill: several starts, and a slice also
+    /// starts where its neighbours' best stand, once forward and once back.
+    fn corners(&mut self, cell: &Cell, wanted: &[Objective]) {
+        let count = self.slices.len();
+        let mut corners: Vec<Vec<Option<Solved>>> = vec![vec![None; wanted.len()]; count];
+        for slice in 0..count {
+            for (which, &objective) in wanted.iter().enumerate() {
+                let starts = if which == 0 { 0..=RESTARTS } else { 1..=1 };
+                let axes = self.slices[slice].axes.len();
+                let mut points: Vec<Row> = starts
+                    .map(|number| self.context.start(cell, slice, number, axes))
+                    .collect();
+                // A slice without a feasible design is not climbed for its other extremes.
+                let own = corners[slice][0].as_ref().map(|s| s.point);
+                if which > 0 && own.is_none() {
+                    continue;
+                }
+                points.extend(own.filter(|_| which > 0));
+                points.extend(neighbour(&corners, slice.checked_sub(1), which));
+                for point in points {
+                    self.climb(slice, objective, point, &mut corners[slice][which]);
+                }
             }
-            let goal = NO_TARGET.goal(objective);
-            let warm = self.solve(slice, goal, best.point, &no_curvature());
-            let point = self.context.start(cell, slice, 1, axes);
-            let cold = self.solve(slice, goal, point, &no_curvature());
-            let Some(corner) = better(warm, cold, objective) else {
-                continue;
-            };
+        }
+        for slice in (0..count).rev() {
+            for (which, &objective) in wanted.iter().enumerate() {
+                if let Some(point) = neighbour(&corners, Some(slice + 1), which)
+                    && corners[slice][0].is_some()
+                {
+                    self.climb(slice, objective, point, &mut corners[slice][which]);
+                }
+            }
+        }
+        for (slice, corners) in corners.into_iter().enumerate() {
+            self.keep_corners(slice, wanted, corners);
+        }
+    }
+
+    fn climb(&mut self, slice: usize, objective: Objective, point: Row, best: &mut Option<Solved>) {
+        let solved = self.solve(slice, NO_TARGET.goal(objective), point, &no_curvature());
+        *best = better(best.take(), solved, objective);
+    }
+
+    /// Notes what the corners say of a slice's reach.
+    fn keep_corners(&mut self, slice: usize, wanted: &[Objective], corners: Vec<Option<Solved>>) {
+        let reached = &mut self.reached[slice];
+        for (which, (&objective, corner)) in wanted.iter().zip(corners).enumerate() {
+            let best = corner
+                .as_ref()
+                .map_or(f64::NEG_INFINITY, |s| score(s, objective));
+            if which == 0 {
+                reached.scores.push((NO_TARGET, best));
+            }
+            let Some(corner) = corner else { continue };
             // Beyond its own extreme a slice reaches nothing.
-            let beyond = match objective {
-                Objective::OutputPower => Target {
-                    least_power: corner.merits[1] + EXTREME_SLACK,
-                    ..NO_TARGET
-                },
-                _ => Target {
-                    most_area: corner.merits[2] - EXTREME_SLACK,
-                    ..NO_TARGET
-                },
-            };
-            self.reached[slice].scores.push((beyond, f64::NEG_INFINITY));
-            if objective == Objective::OutputPower {
-                self.reached[slice].most_power = corner.merits[1] + EXTREME_SLACK;
+            match objective {
+                Objective::OutputPower if which > 0 => {
+                    reached.most_power = best + EXTREME_SLACK;
+                    let beyond = Target {
+                        least_power: reached.most_power,
+                        ..NO_TARGET
+                    };
+                    reached.scores.push((beyond, f64::NEG_INFINITY));
+                }
+                Objective::Area if which > 0 => {
+                    let beyond = Target {
+                        most_area: -best - EXTREME_SLACK,
+                        ..NO_TARGET
+                    };
+                    reached.scores.push((beyond, f64::NEG_INFINITY));
+                }
+                _ => {}
             }
-            corners.push(corner);
+            self.found.push(corner.clone());
+            reached.solved.push(corner);
         }
-        self.found.extend(corners.iter().cloned());
-        self.reached[slice].solved.extend(corners);
     }
 
     /// Filters what was found, evaluates it exactly, filters and spreads again.
@@ -433,6 +463,12 @@ pub fn point_costs(objectives: &[Objective], point: &FrontPoint) -> Costs {
         .map_or([f64::INFINITY; 3], |f| {
             costs(objectives, f.efficiency, f.output_power_w, f.area_m2)
         })
+}
+
+/// Where a neighbouring slice's best stands.
+fn neighbour(corners: &[Vec<Option<Solved>>], slice: Option<usize>, which: usize) -> Option<Row> {
+    let solved = corners.get(slice?)?.get(which)?.as_ref()?;
+    Some(solved.point)
 }
 
 /// What is to be made large when `by` is the primary objective.
