@@ -9,7 +9,7 @@ use super::Context;
 use super::front::{Costs, costs, non_dominated, spread};
 use super::problem::{Goal, SliceProblem};
 use super::quadratic::{MOST_VARIABLES, Row};
-use super::solver::{Curvature, Ended, SequentialQuadratic, no_curvature};
+use super::solver::{Constrained, Curvature, Ended, SequentialQuadratic, no_curvature};
 use super::space::{Cell, Slice, slices};
 use crate::evaluate::{Evaluation, evaluate};
 use crate::study::Objective;
@@ -26,8 +26,12 @@ const RESIDUAL: f64 = 1e-6;
 pub const CERTIFIED_RESIDUAL: f64 = 1e-4;
 /// A target this far past a slice's extreme (relative) is out of its reach: more than the solves' tolerance.
 const EXTREME_SLACK: f64 = 1e-4;
-/// Starts of a slice's first solve besides the middle.
-const RESTARTS: usize = 3;
+/// Points drawn to choose a slice's starts from.
+const SAMPLES: usize = 48;
+/// Starts of a slice in each objective.
+const STARTS: usize = 3;
+/// What a unit of broken limits counts when starts are ranked, in units of ln efficiency.
+const VIOLATION_WEIGHT: f64 = 10.0;
 const MOST_ITERATIONS: u64 = 80;
 
 /// A point of a cell's front.
@@ -337,11 +341,7 @@ impl Tracer<'_> {
         let mut corners: Vec<Vec<Option<Solved>>> = vec![vec![None; wanted.len()]; count];
         for slice in 0..count {
             for (which, &objective) in wanted.iter().enumerate() {
-                let starts = if which == 0 { 0..=RESTARTS } else { 1..=1 };
-                let axes = self.slices[slice].axes.len();
-                let mut points: Vec<Row> = starts
-                    .map(|number| self.context.start(cell, slice, number, axes))
-                    .collect();
+                let mut points = self.starts(cell, slice, objective);
                 // A slice without a feasible design is not climbed for its other extremes.
                 let own = corners[slice][0].as_ref().map(|s| s.point);
                 if which > 0 && own.is_none() {
@@ -366,6 +366,25 @@ impl Tracer<'_> {
         for (slice, corners) in corners.into_iter().enumerate() {
             self.keep_corners(slice, wanted, corners);
         }
+    }
+
+    /// Where to start a slice: of many points drawn by seed the ones that are best and least infeasible.
+    fn starts(&mut self, cell: &Cell, slice: usize, objective: Objective) -> Vec<Row> {
+        let axes = self.slices[slice].axes.len();
+        let Some(problem) = self.problem(slice, NO_TARGET.goal(objective)) else {
+            return Vec::new();
+        };
+        let mut drawn: Vec<(f64, Row)> = (0..SAMPLES)
+            .map(|number| self.context.start(cell, slice, number, axes))
+            .filter_map(|point| {
+                let a = problem.assess(&point)?;
+                let broken: f64 = a.constraints.iter().map(|c| (-c.value).max(0.0)).sum();
+                Some((a.cost.value + VIOLATION_WEIGHT * broken, point))
+            })
+            .collect();
+        self.evaluations += SAMPLES as u64;
+        drawn.sort_by(|a, b| a.0.total_cmp(&b.0));
+        drawn.into_iter().take(STARTS).map(|(_, p)| p).collect()
     }
 
     fn climb(&mut self, slice: usize, objective: Objective, point: Row, best: &mut Option<Solved>) {
