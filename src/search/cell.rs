@@ -27,8 +27,8 @@ pub const CERTIFIED_RESIDUAL: f64 = 1e-4;
 /// A target this far past a slice's extreme (relative) is out of its reach: more than the solves' tolerance.
 const EXTREME_SLACK: f64 = 1e-4;
 /// Points drawn to choose a slice's starts from.
-const SAMPLES: usize = 48;
-/// Starts of a slice in each objective.
+const SAMPLES: usize = 32;
+/// Starts of a slice in the primary objective; its other extremes have one, and those of its neighbours.
 const STARTS: usize = 3;
 /// What a unit of broken limits counts when starts are ranked, in units of ln efficiency.
 const VIOLATION_WEIGHT: f64 = 10.0;
@@ -342,6 +342,7 @@ impl Tracer<'_> {
         for slice in 0..count {
             for (which, &objective) in wanted.iter().enumerate() {
                 let mut points = self.starts(cell, slice, objective);
+                points.truncate(if which == 0 { STARTS } else { 1 });
                 // A slice without a feasible design is not climbed for its other extremes.
                 let own = corners[slice][0].as_ref().map(|s| s.point);
                 if which > 0 && own.is_none() {
@@ -384,7 +385,7 @@ impl Tracer<'_> {
             .collect();
         self.evaluations += SAMPLES as u64;
         drawn.sort_by(|a, b| a.0.total_cmp(&b.0));
-        drawn.into_iter().take(STARTS).map(|(_, p)| p).collect()
+        drawn.into_iter().map(|(_, p)| p).collect()
     }
 
     fn climb(&mut self, slice: usize, objective: Objective, point: Row, best: &mut Option<Solved>) {
