@@ -1,8 +1,10 @@
 //! `widefront fit`: a technology's transistors from tables.
 
 use super::{Failure, print};
-use crate::fit::{self, Existing, FitError, Options, PerDevice};
+use crate::fit::residual::{GATE, JUNCTION, ON, Residual};
+use crate::fit::{self, Existing, FitError, FittedPair, Options, PerDevice};
 use crate::quantity::Dimension;
+use crate::report::figures::{self, DeviceFit, MeasuredPoint, Series};
 use clap::Args;
 use std::io::Write;
 use std::path::{Path, PathBuf};
@@ -43,6 +45,9 @@ pub(crate) struct FitArguments {
     /// Write every measured point against the model to this CSV file.
     #[arg(long, value_name = "FILE")]
     residuals: Option<PathBuf>,
+    /// Draw every device, measured points against the model, into this folder.
+    #[arg(long, value_name = "DIR")]
+    figures: Option<PathBuf>,
 }
 
 impl From<FitError> for Failure {
@@ -71,6 +76,9 @@ pub(crate) fn run(arguments: &FitArguments) -> Result<(), Failure> {
     write(into, &text)?;
     if let Some(path) = &arguments.residuals {
         write(path, &fit::residuals_csv(&pairs, &tables))?;
+    }
+    if let Some(folder) = &arguments.figures {
+        draw(folder, &pairs)?;
     }
     for pair in &pairs {
         for device in &pair.devices {
@@ -103,6 +111,86 @@ pub(crate) fn run(arguments: &FitArguments) -> Result<(), Failure> {
         );
     }
     print(&fit::report(&pairs))
+}
+
+/// A figure a device.
+fn draw(folder: &Path, pairs: &[FittedPair]) -> Result<(), Failure> {
+    std::fs::create_dir_all(folder)
+        .map_err(|error| Failure::Run(format!("{}: {error}", folder.display())))?;
+    for pair in pairs {
+        for device in &pair.devices {
+            let polarity = device.polarity.name();
+            let figure = DeviceFit {
+                title: format!("{} {polarity}: points measured, lines the model", pair.name),
+                on_resistance: series(&device.residuals, ON, |r| {
+                    format!("{:.0} °C", r.temperature_k - 273.15)
+                }),
+                capacitance: [(GATE, "gate"), (JUNCTION, "junction")]
+                    .into_iter()
+                    .flat_map(|(quantity, name)| {
+                        series(&device.residuals, quantity, |_| name.into())
+                    })
+                    .map(relative)
+                    .enumerate()
+                    .map(|(slot, series)| Series {
+                        // Structures of several shapes follow each other.
+                        name: format!("{} {}", series.name, slot + 1),
+                        ..series
+                    })
+                    .collect(),
+            };
+            let nothing = figure.on_resistance.is_empty() && figure.capacitance.is_empty();
+            if !nothing {
+                figures::write_fit(folder, &format!("{}-{polarity}", pair.name), &figure)
+                    .map_err(|error| Failure::Run(error.to_string()))?;
+            }
+        }
+    }
+    Ok(())
+}
+
+/// Residuals of one quantity cut where the voltage falls back: a series a temperature or structure. Resistances in Ω·µm.
+fn series(
+    residuals: &[Residual],
+    quantity: &str,
+    name: impl Fn(&Residual) -> String,
+) -> Vec<Series> {
+    let unit = if quantity == ON { 1e6 } else { 1.0 };
+    let mut list: Vec<Series> = Vec::new();
+    for r in residuals.iter().filter(|r| r.quantity == quantity) {
+        let point = MeasuredPoint {
+            voltage_v: r.voltage_v,
+            measured: unit * r.measured,
+            model: unit * r.model,
+        };
+        let name = name(r);
+        match list.last_mut() {
+            Some(last)
+                if last.name == name
+                    && last
+                        .points
+                        .last()
+                        .is_some_and(|p| p.voltage_v < r.voltage_v) =>
+            {
+                last.points.push(point);
+            }
+            _ => list.push(Series {
+                name,
+                points: vec![point],
+            }),
+        }
+    }
+    list
+}
+
+/// A series over its first measured value.
+fn relative(mut series: Series) -> Series {
+    let first = series.points.first().map_or(1.0, |p| p.measured);
+    for p in &mut series.points {
+        p.measured /= first;
+        p.model /= first;
+    }
+    series
 }
 
 fn options(arguments: &FitArguments) -> Result<Options, Failure> {

@@ -12,7 +12,7 @@ mod notes;
 mod options;
 mod points;
 mod report;
-mod residual;
+pub mod residual;
 mod resistance;
 mod section;
 mod table;

@@ -1,5 +1,6 @@
 //! Figures of a run as SVG and PNG, the same drawing for both, readable at half a page.
 
+mod fitted;
 mod front;
 mod losses;
 mod map;
@@ -8,6 +9,7 @@ mod style;
 
 use crate::run::records::{DesignRecord, PeriodRecord, WidthSweep};
 use crate::run::summary::CellLine;
+pub use fitted::{DeviceFit, MeasuredPoint, Series};
 use plotters::backend::{BitMapBackend, DrawingBackend, SVGBackend};
 use plotters::coord::Shift;
 use plotters::drawing::{DrawingArea, IntoDrawingArea};
@@ -96,6 +98,15 @@ pub fn write_all(folder: &Path, input: &FigureInput<'_>) -> Result<Vec<PathBuf>,
     Ok(files)
 }
 
+/// Draws one fitted device, points as circles and the model as lines, as `NAME.svg` and `NAME.png`.
+///
+/// # Errors
+/// As [`write_all`].
+pub fn write_fit(folder: &Path, name: &str, fit: &DeviceFit) -> Result<[PathBuf; 2], FigureError> {
+    style::register_font();
+    write(folder, name, Shape::Fitted(fit))
+}
+
 /// One figure with its records.
 #[derive(Clone, Copy)]
 enum Shape<'a> {
@@ -103,6 +114,7 @@ enum Shape<'a> {
     Map(&'a FigureInput<'a>),
     Losses(&'a WidthSweep),
     Period(&'a PeriodRecord),
+    Fitted(&'a DeviceFit),
 }
 
 fn draw<B: DrawingBackend>(area: &DrawingArea<B, Shift>, shape: Shape<'_>) -> Drawn {
@@ -112,6 +124,7 @@ fn draw<B: DrawingBackend>(area: &DrawingArea<B, Shift>, shape: Shape<'_>) -> Dr
         Shape::Map(input) => map::draw(area, input),
         Shape::Losses(sweep) => losses::draw(area, sweep),
         Shape::Period(record) => period::draw(area, record),
+        Shape::Fitted(fit) => fitted::draw(area, fit),
     }?;
     area.present().map_err(reason)
 }
