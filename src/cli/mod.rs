@@ -35,7 +35,7 @@ enum Command {
         frequency: String,
     },
     /// Fit a technology's transistors to measured or simulated tables.
-    Fit(fit::FitArguments),
+    Fit(Box<fit::FitArguments>),
     /// Evaluate the design of a study.
     Evaluate {
         /// The study file.
