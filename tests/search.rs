@@ -182,4 +182,9 @@ fn law_what_cannot_be_written_is_an_error_and_no_panic() {
         b"three years of work"
     );
     search(&["--quiet", "--resume", "--out", foreign.to_str().unwrap()]).code(1);
+    // What a search leaves that was killed before it wrote its record is no obstacle.
+    let early = temp.path().join("early");
+    fs::create_dir_all(early.join("cells")).unwrap();
+    fs::write(early.join("lock"), "").unwrap();
+    search(&["--quiet", "--part", "1/4", "--out", early.to_str().unwrap()]).success();
 }

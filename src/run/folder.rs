@@ -43,8 +43,11 @@ impl RunFolder {
             return Err(RunError::Exists(path.to_owned()));
         }
         if path.is_dir() {
+            // A search killed before it wrote its record leaves its empty rooms.
+            let ours =
+                |name: &std::ffi::OsStr| [LOCK, "cells", "figures"].iter().any(|o| name == *o);
             let mut entries = std::fs::read_dir(path).map_err(io(path))?;
-            if entries.any(|e| e.is_ok_and(|e| e.file_name() != LOCK)) {
+            if entries.any(|e| e.is_ok_and(|e| !ours(&e.file_name()))) {
                 return Err(RunError::NotARun(path.to_owned()));
             }
         }
