@@ -3,9 +3,7 @@
 mod figures;
 mod limits;
 
-pub use figures::{
-    AreaParts, DesignValues, Evaluation, Figures, evaluate, evaluate_with_coil, loop_waveform,
-};
+pub use figures::{AreaParts, Evaluation, Figures, evaluate, evaluate_with_coil, loop_waveform};
 pub use limits::{Limit, Margin, margins};
 
 use crate::budget::Losses;

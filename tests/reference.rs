@@ -3,7 +3,7 @@
 use serde_json::Value;
 use std::collections::BTreeMap;
 use std::path::PathBuf;
-use widefront::evaluate::{DesignValues, Evaluation, Setup, evaluate, evaluate_with_coil};
+use widefront::evaluate::{Evaluation, Setup, evaluate, evaluate_with_coil};
 use widefront::stage::Coil;
 use widefront::study::{
     Design, DriverChoice, Limits, Network, Objective, SearchSettings, StageChoice, Study, Swing,
@@ -183,7 +183,7 @@ fn evaluated(case: &Value) -> Evaluation {
             let each = inductor::footprint_m2(&process, design.diameter_m.unwrap());
             evaluate_with_coil(
                 &setup,
-                DesignValues::from(&design),
+                design.clone(),
                 &Coil {
                     inductance_h: number(coil, "inductance_h"),
                     resistance_ohm: number(coil, "resistance_ohm"),

@@ -23,54 +23,8 @@ pub struct Evaluation {
     /// Present when it exists.
     #[serde(flatten)]
     pub figures: Option<Figures>,
-    /// The sizing.
-    pub design: DesignValues,
-}
-
-/// The sizing as written to JSON: a result of the design (the trace with the direct network) filled in.
-#[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
-pub struct DesignValues {
-    /// V_DD, V.
-    pub supply_v: f64,
-    /// Q_L.
-    pub loaded_q: f64,
-    /// W_n, m.
-    pub nmos_width_m: f64,
-    /// W_p/W_n.
-    pub width_ratio: f64,
-    /// Spiral turns; none with a fixed inductor.
-    pub turns: Option<u32>,
-    /// Trace width, m; none with a fixed inductor.
-    pub trace_m: Option<f64>,
-    /// Outer diameter, m; none with a fixed inductor.
-    pub diameter_m: Option<f64>,
-    /// R_opt, Ω, with a fixed inductor and the low-pass network.
-    #[serde(skip_serializing_if = "Option::is_none", default)]
-    pub resistance_ohm: Option<f64>,
-    /// Load angle x.
-    pub reactance: f64,
-    /// Dead time, a fraction of the period.
-    pub dead_time: f64,
-    /// Driver stages.
-    pub stages: u32,
-}
-
-impl From<&Design> for DesignValues {
-    fn from(d: &Design) -> Self {
-        Self {
-            supply_v: d.supply_v,
-            loaded_q: d.loaded_q,
-            nmos_width_m: d.nmos_width_m,
-            width_ratio: d.width_ratio,
-            turns: d.turns,
-            trace_m: d.trace_m,
-            diameter_m: d.diameter_m,
-            resistance_ohm: d.resistance_ohm,
-            reactance: d.reactance,
-            dead_time: d.dead_time,
-            stages: d.stages,
-        }
-    }
+    /// The sizing; a result of it (the trace with the direct network) filled in.
+    pub design: Design,
 }
 
 /// Area by part, m².
@@ -159,7 +113,7 @@ pub struct Figures {
 
 /// Evaluates `design` exactly, its spiral solved.
 pub fn evaluate(setup: &Setup, design: &Design) -> Evaluation {
-    let mut values = DesignValues::from(design);
+    let mut values = design.clone();
     match solve_coil(setup, design, &mut values) {
         Ok((coil, self_resonance_hz)) => {
             evaluate_with_coil(setup, values, &coil, self_resonance_hz)
@@ -168,7 +122,7 @@ pub fn evaluate(setup: &Setup, design: &Design) -> Evaluation {
     }
 }
 
-fn cannot_exist(design: DesignValues, reason: &Impossible) -> Evaluation {
+fn cannot_exist(design: Design, reason: &Impossible) -> Evaluation {
     Evaluation {
         feasible: false,
         reason: Some(reason.to_string()),
@@ -178,7 +132,7 @@ fn cannot_exist(design: DesignValues, reason: &Impossible) -> Evaluation {
     }
 }
 
-fn sizing(values: &DesignValues) -> Sizing<f64> {
+fn sizing(values: &Design) -> Sizing<f64> {
     Sizing {
         supply_v: values.supply_v,
         loaded_q: values.loaded_q,
@@ -193,7 +147,7 @@ fn sizing(values: &DesignValues) -> Sizing<f64> {
 /// Evaluates a design whose inductor is already known (loop values).
 pub fn evaluate_with_coil(
     setup: &Setup,
-    values: DesignValues,
+    values: Design,
     coil: &Coil<f64>,
     self_resonance_hz: Option<f64>,
 ) -> Evaluation {
@@ -211,7 +165,7 @@ pub fn evaluate_with_coil(
 
 fn full_figures(
     setup: &Setup,
-    values: &DesignValues,
+    values: &Design,
     coil: &Coil<f64>,
     self_resonance_hz: Option<f64>,
 ) -> Result<(Figures, Vec<Limit>), Impossible> {
@@ -297,7 +251,7 @@ fn full_figures(
 
 /// One period of a design that exists, `samples` points; `None` when it does not.
 pub fn loop_waveform(setup: &Setup, design: &Design, samples: usize) -> Option<Waveform> {
-    let mut values = DesignValues::from(design);
+    let mut values = design.clone();
     let (coil, _) = solve_coil(setup, design, &mut values).ok()?;
     let core = core(setup, &sizing(&values), &coil).ok()?;
     waveform::waveform(&core.circuit, samples)
@@ -307,7 +261,7 @@ pub fn loop_waveform(setup: &Setup, design: &Design, samples: usize) -> Option<W
 fn solve_coil(
     setup: &Setup,
     design: &Design,
-    values: &mut DesignValues,
+    values: &mut Design,
 ) -> Result<(Coil<f64>, Option<f64>), Impossible> {
     let antenna = setup.network.antenna_resistance_ohm;
     match &setup.inductor {
@@ -361,24 +315,6 @@ fn solve_coil(
                 area_m2: inductor::footprint_m2(process, diameter_m) * legs,
             };
             Ok((coil, solved.self_resonance_hz))
-        }
-    }
-}
-
-impl From<&DesignValues> for Design {
-    fn from(v: &DesignValues) -> Self {
-        Self {
-            supply_v: v.supply_v,
-            loaded_q: v.loaded_q,
-            nmos_width_m: v.nmos_width_m,
-            width_ratio: v.width_ratio,
-            turns: v.turns,
-            trace_m: v.trace_m,
-            diameter_m: v.diameter_m,
-            resistance_ohm: v.resistance_ohm,
-            reactance: v.reactance,
-            dead_time: v.dead_time,
-            stages: v.stages,
         }
     }
 }

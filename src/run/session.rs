@@ -386,7 +386,7 @@ fn illustrations(
     let Some(best) = summary.front.first() else {
         return Ok((None, None));
     };
-    let design = Design::from(&best.evaluation.design);
+    let design = &best.evaluation.design;
     let widths: Vec<f64> = (0..WIDTHS)
         .map(|i| design.nmos_width_m * 5f64.powf(2.0 * i as f64 / (WIDTHS - 1) as f64 - 1.0))
         .collect();
@@ -406,7 +406,7 @@ fn illustrations(
         evaluations,
     };
     folder.write_json("figures/width_sweep.json", &sweep)?;
-    let period = loop_waveform(job.setup, &design, SAMPLES).map(|waveform| PeriodRecord {
+    let period = loop_waveform(job.setup, design, SAMPLES).map(|waveform| PeriodRecord {
         id: best.id.clone(),
         frequency_hz: job.setup.frequency_hz,
         supply_v: design.supply_v,

@@ -194,6 +194,7 @@ pub struct Design {
     /// Outer diameter, m.
     pub diameter_m: Option<f64>,
     /// R_opt, Ω, with a fixed inductor and the low-pass network.
+    #[serde(skip_serializing_if = "Option::is_none", default)]
     pub resistance_ohm: Option<f64>,
     /// Load angle x.
     pub reactance: f64,

@@ -1,6 +1,6 @@
 //! A fitted device: measured points against the model, on-resistance over gate voltage and capacitance over voltage.
 
-use super::style::{CATEGORIES, FAINT, INK, decimals, heading, text, widened};
+use super::style::{CATEGORIES, axes, decimals, heading, text, widened};
 use super::{Drawn, reason};
 use plotters::coord::Shift;
 use plotters::prelude::*;
@@ -78,21 +78,13 @@ fn draw_panel<B: DrawingBackend>(
         .y_label_area_size(100)
         .build_cartesian_2d(left..right, bottom..top)
         .map_err(reason)?;
-    chart
-        .configure_mesh()
-        .light_line_style(TRANSPARENT)
-        .bold_line_style(FAINT)
-        .axis_style(INK)
-        .label_style(text())
-        .axis_desc_style(text())
-        .x_labels(5)
-        .y_labels(8)
-        .x_label_formatter(&|v| format!("{v:.*}", decimals(right - left)))
-        .y_label_formatter(&|v| format!("{v:.*}", decimals(top - bottom)))
-        .x_desc(across)
-        .y_desc(up)
-        .draw()
-        .map_err(reason)?;
+    axes(
+        &mut chart,
+        [&|v| format!("{v:.*}", decimals(right - left)), &|v| {
+            format!("{v:.*}", decimals(top - bottom))
+        }],
+        [across, up],
+    )?;
     let middle = text().pos(Pos::new(HPos::Left, VPos::Center));
     for (slot, s) in series.iter().enumerate() {
         let colour = CATEGORIES[slot % CATEGORIES.len()];

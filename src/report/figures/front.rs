@@ -1,6 +1,6 @@
 //! The front: efficiency against output power, area by colour.
 
-use super::style::{FAINT, INK, decimals, heading, ramp, text, widened};
+use super::style::{INK, axes, decimals, heading, ramp, text, widened};
 use super::{Drawn, FigureInput, reason};
 use crate::evaluate::Figures;
 use plotters::coord::Shift;
@@ -40,21 +40,13 @@ pub fn draw<B: DrawingBackend>(area: &DrawingArea<B, Shift>, input: &FigureInput
         .y_label_area_size(100)
         .build_cartesian_2d(left..right, bottom..top)
         .map_err(reason)?;
-    chart
-        .configure_mesh()
-        .light_line_style(TRANSPARENT)
-        .bold_line_style(FAINT)
-        .axis_style(INK)
-        .label_style(text())
-        .axis_desc_style(text())
-        .x_labels(8)
-        .y_labels(8)
-        .x_label_formatter(&|v| format!("{v:.*}", decimals(right - left)))
-        .y_label_formatter(&|v| format!("{v:.*}", decimals(top - bottom)))
-        .x_desc("output power (dBm)")
-        .y_desc("efficiency (%)")
-        .draw()
-        .map_err(reason)?;
+    axes(
+        &mut chart,
+        [&|v| format!("{v:.*}", decimals(right - left)), &|v| {
+            format!("{v:.*}", decimals(top - bottom))
+        }],
+        ["output power (dBm)", "efficiency (%)"],
+    )?;
     let radius = if points.len() > 1500 { 4 } else { 6 };
     let share = |f: &Figures| {
         if most > least {

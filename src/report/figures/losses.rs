@@ -1,6 +1,6 @@
 //! The losses against NMOS width: stacked, the width of best efficiency marked.
 
-use super::style::{CATEGORIES, FAINT, INK, decimals, heading, text};
+use super::style::{CATEGORIES, INK, axes, decimals, heading, text};
 use super::{Drawn, reason};
 use crate::budget::LOSS_NAMES;
 use crate::evaluate::Figures;
@@ -52,22 +52,11 @@ pub fn draw<B: DrawingBackend>(area: &DrawingArea<B, Shift>, sweep: &WidthSweep)
         .y_label_area_size(100)
         .build_cartesian_2d((first.0..last.0.max(first.0 * 1.01)).log_scale(), 0.0..top)
         .map_err(reason)?;
-    chart
-        .configure_mesh()
-        .light_line_style(TRANSPARENT)
-        .bold_line_style(FAINT)
-        .axis_style(INK)
-        .label_style(text())
-        .axis_desc_style(text())
-        .x_labels(6)
-        .y_labels(8)
-        .x_label_formatter(&|_| String::new())
-        .disable_x_mesh()
-        .y_label_formatter(&|v| format!("{v:.*}", decimals(top)))
-        .x_desc("NMOS width (µm)")
-        .y_desc("loss (mW)")
-        .draw()
-        .map_err(reason)?;
+    axes(
+        &mut chart,
+        [&|_| String::new(), &|v| format!("{v:.*}", decimals(top))],
+        ["NMOS width (µm)", "loss (mW)"],
+    )?;
     // The logarithmic axis of the library names decades only.
     let below = text().pos(Pos::new(HPos::Center, VPos::Top));
     for decade in -1..7 {

@@ -1,6 +1,6 @@
 //! One period: drain voltage and loop current, the phases shaded.
 
-use super::style::{CATEGORIES, FAINT, INK, decimals, heading, text, widened};
+use super::style::{CATEGORIES, INK, axes, decimals, heading, text, widened};
 use super::{Drawn, reason};
 use crate::run::records::PeriodRecord;
 use plotters::coord::Shift;
@@ -58,21 +58,13 @@ pub fn draw<B: DrawingBackend>(area: &DrawingArea<B, Shift>, record: &PeriodReco
                 .map_err(reason)?;
         }
     }
-    chart
-        .configure_mesh()
-        .light_line_style(TRANSPARENT)
-        .bold_line_style(FAINT)
-        .axis_style(INK)
-        .label_style(text())
-        .axis_desc_style(text())
-        .x_labels(8)
-        .y_labels(8)
-        .x_label_formatter(&|v| format!("{v:.0}"))
-        .y_label_formatter(&|v| format!("{v:.*}", decimals(v_high - v_low)))
-        .x_desc("time (ps)")
-        .y_desc("drain voltage (V)")
-        .draw()
-        .map_err(reason)?;
+    axes(
+        &mut chart,
+        [&|v| format!("{v:.0}"), &|v| {
+            format!("{v:.*}", decimals(v_high - v_low))
+        }],
+        ["time (ps)", "drain voltage (V)"],
+    )?;
     chart
         .configure_secondary_axes()
         .axis_style(INK)

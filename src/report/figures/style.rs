@@ -1,5 +1,11 @@
 //! Look that all figures share: size, font, colours that colour-blind readers tell apart, ticks.
 
+use super::{Drawn, reason};
+use plotters::backend::DrawingBackend;
+use plotters::chart::ChartContext;
+use plotters::coord::cartesian::Cartesian2d;
+use plotters::coord::ranged1d::{Ranged, ValueFormatter};
+use plotters::style::TRANSPARENT;
 use plotters::style::{FontStyle, IntoFont, RGBColor, TextStyle, register_font as register};
 
 /// Pixels; at half a page's width letters are still of reading size.
@@ -84,4 +90,32 @@ pub fn widened(values: impl Iterator<Item = f64>) -> (f64, f64) {
 /// Decimals that tell steps of a fifth of `span` apart.
 pub fn decimals(span: f64) -> usize {
     (1.0 - (span / 5.0).log10()).floor().clamp(0.0, 6.0) as usize
+}
+
+/// Axes with faint grid lines; labels by the formatters (horizontal, vertical), names with their units.
+pub fn axes<B, X, Y>(
+    chart: &mut ChartContext<'_, B, Cartesian2d<X, Y>>,
+    labels: [&dyn Fn(&f64) -> String; 2],
+    names: [&str; 2],
+) -> Drawn
+where
+    B: DrawingBackend,
+    X: Ranged<ValueType = f64> + ValueFormatter<f64>,
+    Y: Ranged<ValueType = f64> + ValueFormatter<f64>,
+{
+    chart
+        .configure_mesh()
+        .light_line_style(TRANSPARENT)
+        .bold_line_style(FAINT)
+        .axis_style(INK)
+        .label_style(text())
+        .axis_desc_style(text())
+        .x_labels(7)
+        .y_labels(8)
+        .x_label_formatter(labels[0])
+        .y_label_formatter(labels[1])
+        .x_desc(names[0])
+        .y_desc(names[1])
+        .draw()
+        .map_err(reason)
 }
