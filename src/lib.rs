@@ -5,6 +5,7 @@ pub mod cli;
 pub mod evaluate;
 pub mod fit;
 pub mod numerics;
+pub mod pick;
 pub mod quantity;
 pub mod report;
 pub mod run;

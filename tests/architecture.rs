@@ -4,7 +4,7 @@ use std::fs;
 use std::path::{Path, PathBuf};
 
 /// The way data takes, first to last. A room may use itself and what stands before it.
-const WAY: [&str; 13] = [
+const WAY: [&str; 14] = [
     "quantity",
     "numerics",
     "study",
@@ -15,6 +15,7 @@ const WAY: [&str; 13] = [
     "evaluate",
     "search",
     "run",
+    "pick",
     "report",
     "fit",
     "cli",

@@ -3,6 +3,7 @@
 mod check;
 mod evaluate;
 mod fit;
+mod pick;
 mod search;
 
 use crate::evaluate::Setup;
@@ -51,6 +52,8 @@ enum Command {
     Search(search::SearchArguments),
     /// Make one run folder of the parts of a run.
     Join(search::JoinArguments),
+    /// The designs of a run that meet a specification, best first.
+    Pick(pick::PickArguments),
 }
 
 /// Why a command did not succeed.
@@ -85,6 +88,7 @@ pub fn run() -> ExitCode {
         Command::Evaluate { study, set, json } => evaluate::run(&study, &set, json),
         Command::Search(arguments) => search::run(&arguments),
         Command::Join(arguments) => search::join(&arguments),
+        Command::Pick(arguments) => pick::run(&arguments),
     };
     match result {
         Ok(()) => ExitCode::SUCCESS,

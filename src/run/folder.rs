@@ -200,3 +200,16 @@ pub fn read_cell(path: &Path, cell: usize) -> Result<Option<CellRecord>, RunErro
     }
     Ok(Some(file.record))
 }
+
+/// Reads the overall front.
+///
+/// # Errors
+/// [`RunError::Damaged`] when it is none, or the system's.
+pub fn read_front(path: &Path) -> Result<super::records::DesignList, RunError> {
+    let name = path.join("front.json");
+    let text = std::fs::read(&name).map_err(io(&name))?;
+    serde_json::from_slice(&text).map_err(|e| RunError::Damaged {
+        path: name,
+        reason: format!("is damaged: {e}"),
+    })
+}
