@@ -60,6 +60,16 @@ fn law_bad_input_is_told_on_standard_error_with_code_two() {
         .arg("no/such/study.toml")
         .assert()
         .code(2);
+    let temp = tempfile::tempdir().unwrap();
+    let pipe = temp.path().join("pipe.toml");
+    assert!(
+        std::process::Command::new("mkfifo")
+            .arg(&pipe)
+            .status()
+            .unwrap()
+            .success()
+    );
+    widefront().arg("check").arg(&pipe).assert().code(2);
     widefront().arg("no-such-command").assert().code(2);
     widefront()
         .args(["search", "configs/studies/quick.toml", "--part", "4/3"])

@@ -275,7 +275,7 @@ pub(crate) fn merits(
     let frequency_hz = parse("frequency", frequency, Dimension::Frequency)?;
     let file = crate::technology::read_str(text, path)?;
     for warning in &file.warnings {
-        eprintln!("warning: {warning}");
+        eprintln!("{warning}");
     }
     print(&fit::merits(&file.technology, current_a, frequency_hz))
 }

@@ -138,7 +138,7 @@ pub(crate) fn load(path: &Path, set: &[String]) -> Result<Loaded, Failure> {
     }
     let technology = technology::read_for(&file)?;
     for warning in file.warnings.iter().chain(&technology.warnings) {
-        eprintln!("warning: {warning}");
+        eprintln!("{warning}");
     }
     let technology = technology.technology;
     let setup = Setup::new(&file.study, &technology).map_err(|e| Failure::Input(e.to_string()))?;

@@ -40,7 +40,7 @@ pub(crate) fn load(path: &Path) -> Result<String, Faults> {
         let reason = reason(&error);
         fault(FaultKind::Unreadable { reason })
     };
-    let file = std::fs::File::open(path).map_err(unreadable)?;
+    let file = open(path).map_err(unreadable)?;
     let mut bytes = Vec::new();
     let mut limited = file.take(LONGEST_FILE + 1);
     limited.read_to_end(&mut bytes).map_err(unreadable)?;
@@ -52,6 +52,16 @@ pub(crate) fn load(path: &Path) -> Result<String, Faults> {
         let offset = error.utf8_error().valid_up_to();
         fault(FaultKind::NotUtf8 { offset })
     })
+}
+
+/// Opens a regular file; a pipe or a device could keep a reader waiting for ever.
+pub(crate) fn open(path: &Path) -> std::io::Result<std::fs::File> {
+    let kind = std::fs::metadata(path)?;
+    if kind.is_file() || kind.is_dir() {
+        std::fs::File::open(path)
+    } else {
+        Err(std::io::Error::other("it is no regular file"))
+    }
 }
 
 /// Why the system does not give a file, the same on every system for the usual reasons.

@@ -10,7 +10,7 @@ use crate::study::{
 /// Reads the technology that a study names and checks that the two go together.
 pub fn read_for(file: &StudyFile) -> Result<TechnologyFile, Faults> {
     let path = &file.study.technology;
-    if let Err(error) = std::fs::File::open(path) {
+    if let Err(error) = crate::study::raw::open(path) {
         let kind = FaultKind::NoTechnology {
             read: file.technology_as_written.clone(),
             path: path.clone(),
