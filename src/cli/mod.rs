@@ -78,7 +78,7 @@ pub fn run() -> ExitCode {
             study,
             current,
             frequency,
-        } => match std::fs::read_to_string(&study) {
+        } => match crate::study::raw::load(&study) {
             Ok(text) if crate::fit::is_technology(&text) => {
                 fit::merits(&study, &text, &current, &frequency)
             }

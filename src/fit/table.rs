@@ -144,7 +144,7 @@ pub fn read(paths: &[PathBuf]) -> Result<Tables, Faults> {
             continue;
         }
         tables.paths.push(path.clone());
-        match File::open(path) {
+        match crate::study::raw::open(path) {
             Err(error) => {
                 let reason = crate::study::raw::reason(&error);
                 faults.push(fault(path, None, "", FaultKind::Unreadable { reason }));
