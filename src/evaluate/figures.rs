@@ -4,6 +4,7 @@ use super::{FixedInductor, Limit, Performance, Setup, core, margins, performance
 use crate::budget::Losses;
 use crate::numerics::scalar::Scalar;
 use crate::stage::{Coil, Impossible, Sizing};
+use crate::steady::period::ALL_HARMONICS;
 use crate::steady::waveform::{self, Waveform};
 use crate::study::Design;
 use crate::technology::Inductor;
@@ -170,7 +171,7 @@ fn full_figures(
     self_resonance_hz: Option<f64>,
 ) -> Result<(Figures, Vec<Limit>), Impossible> {
     let sizing = sizing(values);
-    let core = core(setup, &sizing, coil)?;
+    let core = core(setup, &sizing, coil, ALL_HARMONICS)?;
     let residual_v = core.period.residual_v.map(Scalar::positive_part);
     let p: Performance<f64> = performance(setup, &sizing, coil, &core, residual_v)?;
     let mut broken: Vec<Limit> = margins(setup, &sizing, &core, &p)
@@ -253,7 +254,7 @@ fn full_figures(
 pub fn loop_waveform(setup: &Setup, design: &Design, samples: usize) -> Option<Waveform> {
     let mut values = design.clone();
     let (coil, _) = solve_coil(setup, design, &mut values).ok()?;
-    let core = core(setup, &sizing(&values), &coil).ok()?;
+    let core = core(setup, &sizing(&values), &coil, ALL_HARMONICS).ok()?;
     waveform::waveform(&core.circuit, samples)
 }
 

@@ -1,5 +1,6 @@
 //! Small square matrices on the stack, over any [`Scalar`]: product, solve, exponential with its halvings.
 
+use super::lyapunov;
 use super::scalar::Scalar;
 use arrayvec::ArrayVec;
 
@@ -27,7 +28,7 @@ pub fn product<S: Scalar, const N: usize>(a: &Matrix<S, N>, b: &Matrix<S, N>) ->
         for k in 0..N {
             let factor = a[i][k];
             for j in 0..N {
-                c[i][j] += factor * b[k][j];
+                c[i][j] = c[i][j].add_product(factor, b[k][j]);
             }
         }
     }
@@ -40,47 +41,46 @@ pub fn apply<S: Scalar, const N: usize>(a: &Matrix<S, N>, x: &Column<S, N>) -> C
     let mut y = [S::zero(); N];
     for i in 0..N {
         for j in 0..N {
-            y[i] += a[i][j] * x[j];
+            y[i] = y[i].add_product(a[i][j], x[j]);
         }
     }
     y
 }
 
-/// Solves `a·x = b` by elimination with partial pivoting; `None` when a pivot vanishes.
+/// Solves `a·x = b` by elimination with partial pivoting; `None` when a pivot vanishes. The right side may carry
+/// derivatives.
 pub fn solve<S: Scalar, const N: usize>(
-    mut a: Matrix<S, N>,
+    mut a: Matrix<f64, N>,
     mut b: Column<S, N>,
 ) -> Option<Column<S, N>> {
     for column in 0..N {
         let mut pivot = column;
         for row in column + 1..N {
-            if a[row][column].value().abs() > a[pivot][column].value().abs() {
+            if a[row][column].abs() > a[pivot][column].abs() {
                 pivot = row;
             }
         }
-        let size = a[pivot][column].value().abs();
+        let size = a[pivot][column].abs();
         if size == 0.0 || !size.is_finite() {
             return None;
         }
         a.swap(column, pivot);
         b.swap(column, pivot);
-        let inverse = S::one() / a[column][column];
         for row in column + 1..N {
-            let factor = a[row][column] * inverse;
+            let factor = a[row][column] / a[column][column];
             for k in column..N {
                 let above = a[column][k];
                 a[row][k] -= factor * above;
             }
-            let above = b[column];
-            b[row] -= factor * above;
+            b[row] = b[row].add_scaled(b[column], -factor);
         }
     }
     for row in (0..N).rev() {
         let mut sum = b[row];
         for k in row + 1..N {
-            sum -= a[row][k] * b[k];
+            sum = sum.add_scaled(b[k], -a[row][k]);
         }
-        b[row] = sum / a[row][row];
+        b[row] = sum * (1.0 / a[row][row]);
     }
     Some(b)
 }
@@ -101,14 +101,16 @@ pub const MOST_HALVINGS: usize = 60;
 /// Norm below which the Taylor polynomial of degree 12 is exact to rounding: 0.35^13/13! < 2e-16.
 const STEP_NORM: f64 = 0.35;
 
-/// `e^x − 1`, together with `e^{x/2} − 1`, `e^{x/4} − 1`, … down to the step where a Taylor polynomial suffices
-/// (scaling and squaring: Higham, *Functions of Matrices*, 2008, ch. 10). The identity is kept apart, so that slow modes
-/// beside a fast one lose nothing to the many squarings the fast one asks for.
+/// `e^x − 1`, together with the values of `e^{x/2} − 1`, `e^{x/4} − 1`, … down to the step where a Taylor polynomial
+/// suffices (scaling and squaring: Higham, *Functions of Matrices*, 2008, ch. 10). The identity is kept apart, so that
+/// slow modes beside a fast one lose nothing to the many squarings the fast one asks for.
 pub struct Exponential<S, const N: usize> {
+    x: Matrix<S, N>,
+    less_identity: Matrix<S, N>,
     /// `powers[k] = e^{x/2^{halvings−k}} − 1`, k = 0..=halvings.
-    powers: ArrayVec<Matrix<S, N>, { MOST_HALVINGS + 1 }>,
+    powers: ArrayVec<Matrix<f64, N>, { MOST_HALVINGS + 1 }>,
     /// `x/2^halvings`.
-    step: Matrix<S, N>,
+    step: Matrix<f64, N>,
 }
 
 impl<S: Scalar, const N: usize> Exponential<S, N> {
@@ -116,8 +118,10 @@ impl<S: Scalar, const N: usize> Exponential<S, N> {
     #[inline(always)]
     pub fn empty() -> Self {
         Self {
+            x: [[S::zero(); N]; N],
+            less_identity: [[S::zero(); N]; N],
             powers: ArrayVec::new(),
-            step: [[S::zero(); N]; N],
+            step: [[0.0; N]; N],
         }
     }
 
@@ -137,40 +141,35 @@ impl<S: Scalar, const N: usize> Exponential<S, N> {
             return None;
         }
         let scale = 0.5f64.powi(halvings as i32);
-        self.step = x.map(|row| row.map(|entry| entry * scale));
+        let step = x.map(|row| row.map(|entry| entry * scale));
+        self.x = *x;
+        self.step = values(&step);
+        self.less_identity = taylor(&step);
         self.powers.clear();
-        self.powers.push(taylor(&self.step));
-        for k in 0..halvings {
+        self.powers.push(values(&self.less_identity));
+        for _ in 0..halvings {
             // (1 + F)² − 1 = 2F + F²
-            let half = &self.powers[k];
+            let half = &self.less_identity;
             let mut square = product(half, half);
             for (row, from) in square.iter_mut().zip(half) {
                 for (entry, f) in row.iter_mut().zip(from) {
-                    *entry += *f * 2.0;
+                    *entry = entry.add_scaled(*f, 2.0);
                 }
             }
-            self.powers.push(square);
+            self.less_identity = square;
+            self.powers.push(values(&square));
         }
         Some(())
     }
 
-    /// The same exponential without derivatives.
-    pub fn values(&self) -> Exponential<f64, N> {
-        let plain = |m: &Matrix<S, N>| m.map(|row| row.map(S::value));
-        let mut values = Exponential::empty();
-        values.powers.extend(self.powers.iter().map(plain));
-        values.step = plain(&self.step);
-        values
-    }
-
     /// `e^{kx/8}·y` for k = 1..8, values only, handed to `visit` one after the other.
-    pub fn eighths(&self, y: &Column<S, N>, mut visit: impl FnMut(usize, &Column<f64, N>)) {
-        let mut at = y.map(S::value);
+    pub fn eighths(&self, y: &Column<f64, N>, mut visit: impl FnMut(usize, &Column<f64, N>)) {
+        let mut at = *y;
         let eighth: Matrix<f64, N> = match self.halvings().checked_sub(3) {
-            Some(k) => self.powers[k].map(|row| row.map(S::value)),
+            Some(k) => self.powers[k],
             None => {
                 let scale = 2f64.powi(self.halvings() as i32 - 3);
-                taylor(&self.step.map(|row| row.map(|entry| entry.value() * scale)))
+                taylor(&self.step.map(|row| row.map(|entry| entry * scale)))
             }
         };
         for k in 1..8 {
@@ -181,15 +180,15 @@ impl<S: Scalar, const N: usize> Exponential<S, N> {
 
     /// `e^x − 1`.
     pub fn less_identity(&self) -> &Matrix<S, N> {
-        &self.powers[self.halvings()]
+        &self.less_identity
     }
 
     fn halvings(&self) -> usize {
         self.powers.len() - 1
     }
 
-    /// `e^{fx}·y` for `0 ≤ f ≤ 1`: binary digits of `f` by the stored halvings, the rest by Taylor.
-    pub fn part(&self, fraction: f64, y: &Column<S, N>) -> Column<S, N> {
+    /// `e^{fx}·y` for `0 ≤ f ≤ 1`, values only: binary digits of `f` by the stored halvings, the rest by Taylor.
+    pub fn part(&self, fraction: f64, y: &Column<f64, N>) -> Column<f64, N> {
         let steps = fraction * 2f64.powi(self.halvings() as i32);
         let whole_steps = steps.floor();
         let mut y = *y;
@@ -206,18 +205,28 @@ impl<S: Scalar, const N: usize> Exponential<S, N> {
         at_fraction(&terms, rest)
     }
 
-    /// `∫₀¹ e^{sx} y yᵀ e^{sxᵀ} ds`: Gauss-Legendre on the smallest step, then
-    /// `W(2h) = W(h) + e^h W(h) (e^h)ᵀ`, a sum of positive terms only.
-    pub fn second_moment(&self, y: &Column<S, N>) -> Matrix<S, N> {
-        let terms = self.taylor_terms(y);
-        let mut w = [[S::zero(); N]; N];
+    /// `e^{fx}·y` at a fixed `f` with its derivatives; `None` as in [`Exponential::fill`].
+    pub fn moving_part(&self, fraction: f64, y: &Column<S, N>) -> Option<Column<S, N>> {
+        let mut part = Self::empty();
+        part.fill(&self.x.map(|row| row.map(|entry| entry * fraction)))?;
+        Some(advanced(part.less_identity(), y))
+    }
+
+    /// `Σ ∫₀¹ y(s) y(s)ᵀ ds` over the given arcs `y(s) = e^{sx} y₀` (start and end of each): values by Gauss-Legendre on
+    /// the smallest step, then `W(2h) = W(h) + e^h W(h) (e^h)ᵀ`, a sum of positive terms only; derivatives from
+    /// [`lyapunov::derivatives`].
+    pub fn second_moment(&self, arcs: &[[&Column<S, N>; 2]]) -> Matrix<S, N> {
+        let mut w = [[0.0; N]; N];
         let step = 0.5f64.powi(self.halvings() as i32);
-        for (node, weight) in GAUSS_NODES {
-            let x = at_fraction(&terms, node);
-            for i in 0..N {
-                let scaled = x[i] * (weight * step);
-                for j in 0..=i {
-                    w[i][j] += scaled * x[j];
+        for [start, _] in arcs {
+            let terms = self.taylor_terms(&start.map(S::value));
+            for (node, weight) in GAUSS_NODES {
+                let x = at_fraction(&terms, node);
+                for i in 0..N {
+                    let scaled = x[i] * (weight * step);
+                    for j in 0..=i {
+                        w[i][j] += scaled * x[j];
+                    }
                 }
             }
         }
@@ -240,18 +249,28 @@ impl<S: Scalar, const N: usize> Exponential<S, N> {
                 }
             }
         }
-        w
+        if S::MOVES {
+            lyapunov::derivatives(&self.x, &w, arcs)
+        } else {
+            w.map(|row| row.map(S::constant))
+        }
     }
 
     /// `(step)^k y/k!`, k = 0..=12.
-    fn taylor_terms(&self, y: &Column<S, N>) -> [Column<S, N>; 13] {
-        let mut terms = [[S::zero(); N]; 13];
+    fn taylor_terms(&self, y: &Column<f64, N>) -> [Column<f64, N>; 13] {
+        let mut terms = [[0.0; N]; 13];
         terms[0] = *y;
         for k in 1..13 {
             terms[k] = apply(&self.step, &terms[k - 1]).map(|entry| entry * (1.0 / k as f64));
         }
         terms
     }
+}
+
+/// A matrix without derivatives.
+#[inline(always)]
+fn values<S: Scalar, const N: usize>(m: &Matrix<S, N>) -> Matrix<f64, N> {
+    m.map(|row| row.map(S::value))
 }
 
 /// Gauss-Legendre nodes and weights on [0, 1], five points: exact to degree 9; with `‖x‖ ≤ 0.35` the remainder
@@ -275,14 +294,11 @@ pub fn advanced<S: Scalar, const N: usize>(f: &Matrix<S, N>, y: &Column<S, N>) -
 }
 
 #[inline(always)]
-fn at_fraction<S: Scalar, const N: usize>(
-    terms: &[Column<S, N>; 13],
-    fraction: f64,
-) -> Column<S, N> {
+fn at_fraction<const N: usize>(terms: &[Column<f64, N>; 13], fraction: f64) -> Column<f64, N> {
     let mut sum = terms[12];
     for term in terms[..12].iter().rev() {
         for i in 0..N {
-            sum[i] = sum[i] * fraction + term[i];
+            sum[i] = term[i].add_product(sum[i], fraction);
         }
     }
     sum
@@ -297,7 +313,9 @@ fn taylor<S: Scalar, const N: usize>(x: &Matrix<S, N>) -> Matrix<S, N> {
         let mut b = [[S::zero(); N]; N];
         for i in 0..N {
             for j in 0..N {
-                b[i][j] = x[i][j] * c1 + x2[i][j] * c2 + x3[i][j] * c3;
+                b[i][j] = (x[i][j] * c1)
+                    .add_scaled(x2[i][j], c2)
+                    .add_scaled(x3[i][j], c3);
             }
             b[i][i] += S::constant(c0);
         }
@@ -311,7 +329,7 @@ fn taylor<S: Scalar, const N: usize>(x: &Matrix<S, N>) -> Matrix<S, N> {
     );
     for (i, row) in sum.iter_mut().enumerate() {
         for (j, entry) in row.iter_mut().enumerate() {
-            *entry += x4[i][j] * (1.0 / 479_001_600.0);
+            *entry = entry.add_scaled(x4[i][j], 1.0 / 479_001_600.0);
         }
     }
     for lower in [
@@ -379,7 +397,8 @@ mod tests {
             assert!((x[0] - radius * (b * fraction).cos()).abs() < TOLERANCE);
             assert!((x[1] - radius * (b * fraction).sin()).abs() < TOLERANCE);
         }
-        let w = e.second_moment(&y);
+        let end = advanced(e.less_identity(), &y);
+        let w = e.second_moment(&[[&y, &end]]);
         // ∫ e^{-2as} ds and ∫ 4 e^{-2fs} ds
         let rotation = (1.0 - (-2.0 * a).exp()) / (2.0 * a);
         assert!((w[0][0] + w[1][1] - rotation).abs() < TOLERANCE);

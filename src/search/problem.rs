@@ -122,7 +122,7 @@ impl<'a> SliceProblem<'a> {
         let mut push = |margin: S, reserve: f64| limits.push(margin - reserve);
         let sizing = values.sizing(self.slice.stages);
         let coil = coil(self.setup, &self.coil, values)?;
-        let core = core(self.setup, &sizing, &coil)?;
+        let core = core(self.setup, &sizing, &coil, self.setup.limited_harmonics())?;
         let residual_v = residual.map(|r| r * sizing.supply_v);
         let p = performance(self.setup, &sizing, &coil, &core, residual_v)?;
         for m in margins(self.setup, &sizing, &core, &p) {
