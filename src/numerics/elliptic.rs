@@ -56,7 +56,7 @@ pub fn complete(complement: f64) -> (f64, f64) {
 /// far apart, κ → 0) cancel on paper: started at the longest and shortest distances `r1`, `r2` between the circles,
 ///
 /// ```text
-/// M = (µ0 π/4)/a∞ · Σ_{n≥1} 2^n c_n²,   c_1 = 2ab/(r1 + r2),   c_{n+1} = c_n²/(4 a_{n+1})
+/// M = (µ0 π/4)/a∞ · Σ_{n≥1} 2^n c_n²,   c_1 = 2ab/(r1 + r2),   c_{n+1} = (a_n − b_n)/2
 /// ```
 ///
 /// a sum of positive terms, so the relative error stays at rounding near and far. Infinite only where the filaments meet.
@@ -90,7 +90,8 @@ fn mutual_by_mean<const STEPS: usize>(a: f64, b: f64, z2: f64) -> f64 {
         let next = 0.5 * (mean + geometric);
         if step + 1 < STEPS {
             geometric = (mean * geometric).sqrt();
-            c = 0.25 * c * c / (0.5 * (next + geometric));
+            // The first term was found without a difference; rounding in the later, smaller ones does not show.
+            c = 0.5 * (next - geometric);
         }
         mean = next;
     }

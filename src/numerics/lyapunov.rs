@@ -129,7 +129,7 @@ mod tests {
         ];
         let start = [S::one(), t, S::one() * 2.0];
         let mut e = Exponential::empty();
-        e.fill(&x).unwrap();
+        e.fill(&x, S::one()).unwrap();
         let end = advanced(e.less_identity(), &start);
         e.second_moment(&[[&start, &end]])
     }

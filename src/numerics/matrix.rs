@@ -24,15 +24,22 @@ pub fn identity<S: Scalar, const N: usize>() -> Matrix<S, N> {
 #[inline(always)]
 pub fn product<S: Scalar, const N: usize>(a: &Matrix<S, N>, b: &Matrix<S, N>) -> Matrix<S, N> {
     let mut c = [[S::zero(); N]; N];
+    multiply(a, b, &mut c);
+    c
+}
+
+/// `c ← a·b`, in place: matrices of numbers with derivatives are large enough for copies to count.
+#[inline(always)]
+fn multiply<S: Scalar, const N: usize>(a: &Matrix<S, N>, b: &Matrix<S, N>, c: &mut Matrix<S, N>) {
     for i in 0..N {
-        for k in 0..N {
-            let factor = a[i][k];
-            for j in 0..N {
-                c[i][j] = c[i][j].add_product(factor, b[k][j]);
+        for j in 0..N {
+            let mut sum = a[i][0] * b[0][j];
+            for k in 1..N {
+                sum = sum.add_product(a[i][k], b[k][j]);
             }
+            c[i][j] = sum;
         }
     }
-    c
 }
 
 /// `a·x`.
@@ -125,10 +132,11 @@ impl<S: Scalar, const N: usize> Exponential<S, N> {
         }
     }
 
-    /// The exponential of `x`; `None` when `x` is not finite or larger than can be halved.
+    /// The exponential of `x = a·t`; `None` when `x` is not finite or larger than can be halved.
     #[must_use]
-    pub fn fill(&mut self, x: &Matrix<S, N>) -> Option<()> {
-        let norm = norm_one(x);
+    pub fn fill(&mut self, a: &Matrix<S, N>, t: S) -> Option<()> {
+        each(&mut self.x, |i, j| a[i][j] * t);
+        let norm = norm_one(&self.x);
         if !norm.is_finite() {
             return None;
         }
@@ -141,23 +149,22 @@ impl<S: Scalar, const N: usize> Exponential<S, N> {
             return None;
         }
         let scale = 0.5f64.powi(halvings as i32);
-        let step = x.map(|row| row.map(|entry| entry * scale));
-        self.x = *x;
-        self.step = values(&step);
-        self.less_identity = taylor(&step);
+        let x = &self.x;
+        each(&mut self.step, |i, j| x[i][j].value() * scale);
+        taylor(|i, j| x[i][j] * scale, &mut self.less_identity);
         self.powers.clear();
         self.powers.push(values(&self.less_identity));
+        let mut square = [[S::zero(); N]; N];
         for _ in 0..halvings {
             // (1 + F)² − 1 = 2F + F²
-            let half = &self.less_identity;
-            let mut square = product(half, half);
-            for (row, from) in square.iter_mut().zip(half) {
-                for (entry, f) in row.iter_mut().zip(from) {
-                    *entry = entry.add_scaled(*f, 2.0);
+            let half = &mut self.less_identity;
+            multiply(half, half, &mut square);
+            for i in 0..N {
+                for j in 0..N {
+                    half[i][j] = square[i][j].add_scaled(half[i][j], 2.0);
                 }
             }
-            self.less_identity = square;
-            self.powers.push(values(&square));
+            self.powers.push(values(half));
         }
         Some(())
     }
@@ -169,7 +176,9 @@ impl<S: Scalar, const N: usize> Exponential<S, N> {
             Some(k) => self.powers[k],
             None => {
                 let scale = 2f64.powi(self.halvings() as i32 - 3);
-                taylor(&self.step.map(|row| row.map(|entry| entry * scale)))
+                let mut eighth = [[0.0; N]; N];
+                taylor(|i, j| self.step[i][j] * scale, &mut eighth);
+                eighth
             }
         };
         for k in 1..8 {
@@ -181,6 +190,11 @@ impl<S: Scalar, const N: usize> Exponential<S, N> {
     /// `e^x − 1`.
     pub fn less_identity(&self) -> &Matrix<S, N> {
         &self.less_identity
+    }
+
+    /// The same, values only.
+    pub fn whole(&self) -> &Matrix<f64, N> {
+        &self.powers[self.halvings()]
     }
 
     fn halvings(&self) -> usize {
@@ -208,7 +222,7 @@ impl<S: Scalar, const N: usize> Exponential<S, N> {
     /// `e^{fx}·y` at a fixed `f` with its derivatives; `None` as in [`Exponential::fill`].
     pub fn moving_part(&self, fraction: f64, y: &Column<S, N>) -> Option<Column<S, N>> {
         let mut part = Self::empty();
-        part.fill(&self.x.map(|row| row.map(|entry| entry * fraction)))?;
+        part.fill(&self.x, S::constant(fraction))?;
         Some(advanced(part.less_identity(), y))
     }
 
@@ -270,7 +284,19 @@ impl<S: Scalar, const N: usize> Exponential<S, N> {
 /// A matrix without derivatives.
 #[inline(always)]
 fn values<S: Scalar, const N: usize>(m: &Matrix<S, N>) -> Matrix<f64, N> {
-    m.map(|row| row.map(S::value))
+    let mut plain = [[0.0; N]; N];
+    each(&mut plain, |i, j| m[i][j].value());
+    plain
+}
+
+/// Sets every entry.
+#[inline(always)]
+fn each<S: Scalar, const N: usize>(m: &mut Matrix<S, N>, entry: impl Fn(usize, usize) -> S) {
+    for i in 0..N {
+        for j in 0..N {
+            m[i][j] = entry(i, j);
+        }
+    }
 }
 
 /// Gauss-Legendre nodes and weights on [0, 1], five points: exact to degree 9; with `‖x‖ ≤ 0.35` the remainder
@@ -304,46 +330,38 @@ fn at_fraction<const N: usize>(terms: &[Column<f64, N>; 13], fraction: f64) -> C
     sum
 }
 
-/// Taylor polynomial of `e^x − 1` of degree 12 in five products (Paterson and Stockmeyer 1973).
-fn taylor<S: Scalar, const N: usize>(x: &Matrix<S, N>) -> Matrix<S, N> {
-    let x2 = product(x, x);
-    let x3 = product(&x2, x);
-    let x4 = product(&x2, &x2);
-    let block = |c0: f64, c1: f64, c2: f64, c3: f64| {
-        let mut b = [[S::zero(); N]; N];
-        for i in 0..N {
-            for j in 0..N {
-                b[i][j] = (x[i][j] * c1)
-                    .add_scaled(x2[i][j], c2)
-                    .add_scaled(x3[i][j], c3);
-            }
-            b[i][i] += S::constant(c0);
-        }
-        b
+/// Taylor polynomial of `e^x − 1` of degree 12 in five products (Paterson and Stockmeyer 1973), into `sum`.
+#[inline(always)]
+fn taylor<S: Scalar, const N: usize>(entry: impl Fn(usize, usize) -> S, sum: &mut Matrix<S, N>) {
+    let mut x = [[S::zero(); N]; N];
+    let (mut x2, mut x3, mut x4) = (x, x, x);
+    each(&mut x, entry);
+    multiply(&x, &x, &mut x2);
+    multiply(&x2, &x, &mut x3);
+    multiply(&x2, &x2, &mut x4);
+    let block = |c: [f64; 4], i: usize, j: usize| {
+        let powers = (x[i][j] * c[1])
+            .add_scaled(x2[i][j], c[2])
+            .add_scaled(x3[i][j], c[3]);
+        if i == j { powers + c[0] } else { powers }
     };
-    let mut sum = block(
+    let highest = [
         1.0 / 40_320.0,
         1.0 / 362_880.0,
         1.0 / 3_628_800.0,
         1.0 / 39_916_800.0,
-    );
-    for (i, row) in sum.iter_mut().enumerate() {
-        for (j, entry) in row.iter_mut().enumerate() {
-            *entry = entry.add_scaled(x4[i][j], 1.0 / 479_001_600.0);
-        }
-    }
+    ];
+    each(sum, |i, j| {
+        block(highest, i, j).add_scaled(x4[i][j], 1.0 / 479_001_600.0)
+    });
+    let mut raised = [[S::zero(); N]; N];
     for lower in [
-        block(1.0 / 24.0, 1.0 / 120.0, 1.0 / 720.0, 1.0 / 5040.0),
-        block(0.0, 1.0, 0.5, 1.0 / 6.0),
+        [1.0 / 24.0, 1.0 / 120.0, 1.0 / 720.0, 1.0 / 5040.0],
+        [0.0, 1.0, 0.5, 1.0 / 6.0],
     ] {
-        sum = product(&x4, &sum);
-        for i in 0..N {
-            for j in 0..N {
-                sum[i][j] += lower[i][j];
-            }
-        }
+        multiply(&x4, sum, &mut raised);
+        each(sum, |i, j| raised[i][j] + block(lower, i, j));
     }
-    sum
 }
 
 #[cfg(test)]
@@ -356,7 +374,7 @@ mod tests {
 
     fn filled<S: Scalar, const N: usize>(x: &Matrix<S, N>) -> Option<Exponential<S, N>> {
         let mut e = Exponential::empty();
-        e.fill(x)?;
+        e.fill(x, S::one())?;
         Some(e)
     }
 

@@ -99,7 +99,7 @@ impl<'m, S: Scalar, const N: usize> Solved<'m, S, N> {
         let distinct = sequence.len().min(3);
         for &(switches, duration) in &sequence[..distinct] {
             let a: Matrix<S, N> = circuit.matrix(switches);
-            maps[switches as usize].fill(&a.map(|row| row.map(|entry| entry * duration)))?;
+            maps[switches as usize].fill(&a, duration)?;
         }
         let maps: &'m Maps<S, N> = maps;
         let mut state = start_state(circuit, &sequence, maps)?;
@@ -149,12 +149,10 @@ fn start_state<S: Scalar, const N: usize>(
     let mut map: Matrix<f64, N> = identity();
     let mut offset = [0.0; N];
     for &(switches, _) in sequence {
-        let f = maps[switches as usize]
-            .less_identity()
-            .map(|row| row.map(S::value));
+        let f = maps[switches as usize].whole();
         let rest = circuit.rest::<N>(switches).map(S::value);
-        offset = total(&apply(&f, &difference(&offset, &rest)), &offset);
-        let mut next = product(&f, &map);
+        offset = total(&apply(f, &difference(&offset, &rest)), &offset);
+        let mut next = product(f, &map);
         for i in 0..N {
             for j in 0..N {
                 next[i][j] += map[i][j];
