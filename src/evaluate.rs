@@ -4,7 +4,10 @@ mod drawn;
 mod figures;
 mod limits;
 
-pub use drawn::{DeviceFigures, Drawn, DrawnEvaluation, DrawnInductor, evaluate_drawn, spiral_of};
+pub use drawn::{
+    DeviceFigures, Drawn, DrawnEvaluation, DrawnInductor, evaluate_drawn, spiral_of,
+    tapered_widths_m,
+};
 pub use figures::{AreaParts, Evaluation, Figures, evaluate, evaluate_with_coil, loop_waveform};
 pub use limits::{Limit, Margin, margins};
 

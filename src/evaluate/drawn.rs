@@ -66,6 +66,19 @@ pub struct DrawnEvaluation {
     pub spiral: Option<SolvedSpiral>,
 }
 
+/// N and P of each stage of the tapered chain of a design, first stage first, m: `w_i = C_in u_t^{i−1}/c_in` (8).
+pub fn tapered_widths_m(setup: &Setup, design: &Design, taper: f64) -> Vec<[f64; 2]> {
+    let swing_v = setup.swing_v(design.supply_v);
+    let ratio = setup.chain.ratio;
+    let [input_f, _] = drawn_capacitances_f(&setup.pair, [1.0, ratio], swing_v);
+    (0..design.stages)
+        .map(|i| {
+            let width = setup.chain.input_capacitance_f * taper.powi(i as i32) / input_f;
+            [width, ratio * width]
+        })
+        .collect()
+}
+
 /// The spiral of a geometry at the carrier; loop values come from [`evaluate_drawn`].
 ///
 /// # Errors
