@@ -1,6 +1,7 @@
 //! Rectangles of a floor plan, micrometres: devices with their fingers, arrays of units.
 
 use super::records::{DrawnCapacitor, DrawnDevice};
+use crate::quantity::{format, micrometres};
 
 /// What a block is.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -22,8 +23,10 @@ pub enum Kind {
 pub struct Block {
     /// What.
     pub kind: Kind,
-    /// Words for it.
+    /// Its name.
     pub label: String,
+    /// Its measure in words.
+    pub detail: String,
     /// Left edge.
     pub x: f64,
     /// Upper edge.
@@ -52,6 +55,7 @@ impl Block {
         Self {
             kind,
             label,
+            detail: String::new(),
             x: 0.0,
             y: 0.0,
             width: f64::from(columns) * cell_width,
@@ -76,6 +80,13 @@ impl Block {
         let height = f.finger_m * 1e6 * width_area_m / pitch_m;
         Self {
             fingers: f.fingers,
+            detail: format!(
+                "{} = {} × {} × {}",
+                micrometres(f.width_m),
+                f.devices,
+                f.fingers,
+                micrometres(f.finger_m)
+            ),
             active: (pitch_m / width_area_m).min(1.0),
             ..Self::array(kind, label, f.devices, width, height)
         }
@@ -84,7 +95,14 @@ impl Block {
     /// An array of unit capacitors.
     pub fn capacitor(label: String, capacitor: &DrawnCapacitor) -> Self {
         let side = capacitor.unit_area_m2.sqrt() * 1e6;
-        Self::array(Kind::Capacitor, label, capacitor.units.units, side, side)
+        Self {
+            detail: format!(
+                "{} in {} units",
+                format(capacitor.units.capacitance_f, "F"),
+                capacitor.units.units
+            ),
+            ..Self::array(Kind::Capacitor, label, capacitor.units.units, side, side)
+        }
     }
 
     /// A plain rectangle of `area_m2`, `width` wide.

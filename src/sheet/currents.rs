@@ -145,10 +145,28 @@ pub fn currents(
     }
 }
 
-/// Widest finger whose metal carries its share: a strip between two fingers takes both their currents, so
-/// `2 (finger/W) I ≤ J w`, m.
-pub fn most_finger_m(rules: &DrawingRules, width_m: f64, rms_a: f64) -> f64 {
-    rules.finger_current_a_m * rules.finger_metal_width_m * width_m / (2.0 * rms_a)
+/// Share of the routing resistance that fingers may take; the rest is for the wires to them.
+const FINGERS_SHARE: f64 = 0.5;
+
+/// Widest finger whose metal carries its share and leaves room in the budget `route_ohm` (0: no budget), m. A strip
+/// between two fingers takes both their currents, `2 (finger/W) I ≤ J w`; all strips of many fingers have
+/// `(4/3) R_sq finger²/(w W)` a device, at most half of the budget.
+pub fn most_finger_m(
+    rules: &DrawingRules,
+    width_m: f64,
+    stack: u32,
+    rms_a: f64,
+    route_ohm: f64,
+) -> f64 {
+    let metal_m = rules.finger_metal_width_m;
+    let by_current = rules.finger_current_a_m * metal_m * width_m / (2.0 * rms_a);
+    let strips = 4.0 / 3.0 * rules.finger_sheet_resistance_ohm * f64::from(stack);
+    let by_resistance = (FINGERS_SHARE * route_ohm * metal_m * width_m / strips).sqrt();
+    if route_ohm > 0.0 && strips > 0.0 {
+        by_current.min(by_resistance)
+    } else {
+        by_current
+    }
 }
 
 /// The strips of a device of n fingers, M of them side by side, `stack` in series, carrying `rms_a`.

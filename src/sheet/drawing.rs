@@ -3,7 +3,7 @@
 use super::block::{Block, Kind};
 use super::floorplan::{Floorplan, PlacedSpiral, floorplan};
 use super::records::Sheet;
-use crate::quantity::format;
+use crate::quantity::{format, micrometres};
 use std::fmt::Write;
 
 /// Width of the picture, pixels.
@@ -14,6 +14,8 @@ const MARGIN: f64 = 40.0;
 const PLAN_HEIGHT: f64 = 760.0;
 /// Height of the closer view at most, pixels.
 const CLOSE_HEIGHT: f64 = 380.0;
+/// Room for words beside the switches, pixels.
+const BESIDE: f64 = 420.0;
 /// Height of letters, pixels.
 const TEXT: f64 = 17.0;
 /// Fingers past this many are not drawn one by one.
@@ -94,7 +96,7 @@ pub fn drawing(sheet: &Sheet) -> String {
         high_y = high_y.max(block.bottom());
     }
     let close_scale =
-        ((WIDTH - 2.0 * MARGIN) / (high_x - low_x)).min(CLOSE_HEIGHT / (high_y - low_y));
+        ((WIDTH - 2.0 * MARGIN - BESIDE) / (high_x - low_x)).min(CLOSE_HEIGHT / (high_y - low_y));
     let close = View {
         scale: close_scale,
         left: MARGIN - close_scale * low_x,
@@ -117,14 +119,27 @@ pub fn drawing(sheet: &Sheet) -> String {
         draw_block(&mut body, close, block, true);
     }
     for block in &plan.core {
-        let x = close.x(block.x + 0.5 * block.width);
-        let above = block.label.starts_with('P');
-        let y = if above {
-            close.y(block.y) - 7.0
+        let middle = close.x(block.x + 0.5 * block.width);
+        if block.kind == Kind::Switch {
+            let (x, y) = (
+                close.x(high_x) + 16.0,
+                close.y(block.y + 0.5 * block.height),
+            );
+            text(&mut body, x, y - 4.0, TEXT, "start", &block.label);
+            text(&mut body, x, y + 18.0, TEXT, "start", &block.detail);
+        } else if block.label.starts_with('P') {
+            text(
+                &mut body,
+                middle,
+                close.y(block.y) - 7.0,
+                14.0,
+                "middle",
+                &block.label,
+            );
         } else {
-            close.y(block.bottom()) + TEXT + 1.0
-        };
-        text(&mut body, x, y, 14.0, "middle", &block.label);
+            let y = close.y(block.bottom()) + TEXT + 1.0;
+            text(&mut body, middle, y, 14.0, "middle", &block.label);
+        }
     }
     let end = close.y(high_y) + 64.0;
     scale_bar(&mut body, close, end, high_x - low_x);
@@ -273,7 +288,8 @@ fn draw_spiral(body: &mut String, view: View, placed: &PlacedSpiral) {
     );
     let (w, step) = (px(s.trace_m), px(s.trace_m + s.spacing_m));
     let outer = 0.5 * px(s.diameter_m) - 0.5 * w;
-    let open = 0.5 * (w + 2.0 * px(s.spacing_m));
+    // A step this long leans little enough to keep its distance from the turn outside it.
+    let open = 1.4 * step;
     let inner = outer - step * f64::from(s.turns - 1);
     let reach = open.min(0.7 * inner);
     let at = |radius: f64, side: f64| {
@@ -300,14 +316,36 @@ fn draw_spiral(body: &mut String, view: View, placed: &PlacedSpiral) {
     let (x, y) = at(inner, 1.0);
     let _ = writeln!(
         body,
-        "<path d=\"M{x:.2} {y:.2}V{:.2}\" fill=\"none\" stroke=\"#6b4a12\" stroke-width=\"{w:.2}\" stroke-opacity=\"0.45\"/>",
+        "<path d=\"M{x:.2} {:.2}V{:.2}\" fill=\"none\" stroke=\"#6b4a12\" stroke-width=\"{w:.2}\" stroke-opacity=\"0.45\"/>",
+        y + 0.5 * w,
         cy - half
     );
     let small = 15.0;
-    let note = format!("D {}", format(s.diameter_m, "m"));
+    let note = format!("outer diameter {}", micrometres(s.diameter_m));
     text(body, cx, cy - 4.0, small, "middle", &note);
-    let note = format!("{} × {}", s.turns, format(s.trace_m, "m"));
+    let note = format!(
+        "{} × {}, spaced {}",
+        s.turns,
+        micrometres(s.trace_m),
+        micrometres(s.spacing_m)
+    );
     text(body, cx, cy + 18.0, small, "middle", &note);
+    text(
+        body,
+        cx - reach - 0.5 * w - 6.0,
+        cy - half + 18.0,
+        small,
+        "end",
+        "from C_s",
+    );
+    text(
+        body,
+        cx + reach + 0.5 * w + 6.0,
+        cy - half + 18.0,
+        small,
+        "start",
+        "to the antenna's side",
+    );
 }
 
 /// A bar of 1, 2 or 5 times a power of ten, at most a fifth of what is shown.

@@ -4,6 +4,7 @@
 use super::block::{Block, Kind};
 use super::records::DrawnDevice;
 use super::records::{DrawnSpiral, Pair, Sheet};
+use crate::quantity::format;
 
 /// Left free between blocks for wires and guard rings.
 const GAP: f64 = 10.0;
@@ -68,9 +69,12 @@ pub fn floorplan(sheet: &Sheet) -> Floorplan {
             (top - GAP - half, "decoupling"),
             (top + core_height + GAP, "decoupling"),
         ] {
-            plan.blocks.push(
-                Block::plain(Kind::Decoupling, name(part), 0.5 * share_m2, column).at(0.0, y),
-            );
+            let plain = Block::plain(Kind::Decoupling, name(part), 0.5 * share_m2, column);
+            let share_f = 0.5 * sheet.decoupling.capacitance_f / f64::from(sheet.legs);
+            plan.blocks.push(Block {
+                detail: format(share_f, "F"),
+                ..plain.at(0.0, y)
+            });
         }
         // Against the right edge of the column: the drains are next to the series capacitor.
         for block in &core {

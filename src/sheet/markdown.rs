@@ -3,7 +3,7 @@
 use super::currents::Current;
 use super::records::{Change, DrawnCapacitor, DrawnDevice, Sheet};
 use crate::budget::LOSS_NAMES;
-use crate::quantity::{format, format_in};
+use crate::quantity::{format, format_in, micrometres};
 use std::fmt::Write;
 
 /// What stands where a figure does not exist.
@@ -90,6 +90,7 @@ fn shown(name: &str, value: f64) -> String {
     match unit {
         Some((_, "dBm")) => format!("{value:.3} dBm"),
         Some((_, "dBc")) => format!("{value:.2} dBc"),
+        Some((_, "m")) => micrometres(value),
         Some((_, unit)) => format(value, unit),
         None => format!("{value:.5}"),
     }
@@ -123,13 +124,19 @@ fn headline(text: &mut String, sheet: &Sheet) {
     table(text, &["figure", "searched", "drawn", "change"], &rows);
 }
 
-/// Levels in decibels as a difference, all else relative.
+/// Figures that may be about 0, where a relative change says nothing.
+const ABOUT_ZERO: [&str; 2] = ["lowest_drain_v", "design.reactance"];
+
+/// Levels in decibels and what may be about 0 as a difference, all else relative.
 fn moved(change: &Change) -> String {
     match (change.searched, change.drawn) {
         (Some(a), Some(b))
             if change.figure.ends_with("_dbm") || change.figure.ends_with("_dbc") =>
         {
             format!("{:+.4} dB", b - a)
+        }
+        (Some(a), Some(b)) if ABOUT_ZERO.contains(&change.figure.as_str()) => {
+            shown(&change.figure, b - a)
         }
         (Some(a), Some(b)) if a != 0.0 => format!("{:+.4} %", 100.0 * (b - a) / a.abs()),
         _ => NONE.to_owned(),
@@ -140,8 +147,8 @@ fn device(name: String, d: &DrawnDevice) -> Vec<String> {
     let f = &d.fingers;
     vec![
         name,
-        format(f.width_m, "m"),
-        format(f.finger_m, "m"),
+        micrometres(f.width_m),
+        micrometres(f.finger_m),
         f.fingers.to_string(),
         f.devices.to_string(),
         format(d.figures.gate_capacitance_f, "F"),
@@ -259,7 +266,7 @@ fn capacitor(name: &str, c: &DrawnCapacitor) -> Vec<String> {
         format(c.units.wanted_capacitance_f, "F"),
         format(c.units.capacitance_f, "F"),
         c.units.units.to_string(),
-        format!("{:.3} um", c.unit_area_m2.sqrt() * 1e6),
+        format(c.unit_area_m2.sqrt(), "m"),
         format(c.bottom_plate_f, "F"),
     ]
 }
@@ -270,11 +277,11 @@ fn passives(text: &mut String, sheet: &Sheet) {
             text.push_str("## Spiral of a leg\n\n");
             let rows = [
                 ("turns", s.turns.to_string()),
-                ("trace", format(s.trace_m, "m")),
-                ("spacing", format(s.spacing_m, "m")),
-                ("outer diameter", format_in(s.diameter_m, "um")),
-                ("inner diameter", format_in(s.inner_diameter_m, "um")),
-                ("keep-out", format(s.keep_out_m, "m")),
+                ("trace", micrometres(s.trace_m)),
+                ("spacing", micrometres(s.spacing_m)),
+                ("outer diameter", micrometres(s.diameter_m)),
+                ("inner diameter", micrometres(s.inner_diameter_m)),
+                ("keep-out", micrometres(s.keep_out_m)),
                 (
                     "trace needed by the current",
                     format(sheet.currents.inductor.top_metal_m, "m"),
@@ -308,7 +315,8 @@ fn passives(text: &mut String, sheet: &Sheet) {
     table(text, &headings, &rows);
     let _ = write!(
         text,
-        "The bottom plate of the series capacitor is on the drain. Decoupling of the whole stage: {} on {}, for a ripple of \
+        "The series capacitor wanted is the one that keeps the load angle with spiral and shunt capacitor as drawn. Its \
+         bottom plate is on the drain; the search counted it there. Decoupling of the whole stage: {} on {}, for a ripple of \
          {} %.\n\n",
         format(sheet.decoupling.capacitance_f, "F"),
         format_in(sheet.decoupling.area_m2, "mm^2"),

@@ -34,7 +34,7 @@ use thiserror::Error;
 const SAMPLES: usize = 1 << 14;
 
 /// Figures whose change by snapping is shown; names of the JSON.
-const HEADLINES: [&str; 26] = [
+const HEADLINES: [&str; 30] = [
     "output_power_dbm",
     "output_power_w",
     "efficiency",
@@ -61,6 +61,10 @@ const HEADLINES: [&str; 26] = [
     "network_current_rms_a",
     "design.loaded_q",
     "design.nmos_width_m",
+    "design.width_ratio",
+    "design.trace_m",
+    "design.diameter_m",
+    "design.reactance",
 ];
 
 /// Why there is no sheet.
@@ -102,7 +106,7 @@ pub struct Made {
 }
 
 /// Snaps a design and evaluates it as drawn. Fingers are made narrow enough for their metal to carry the current that
-/// the drawn stage has; its currents hardly move with the cut, so a few rounds settle it.
+/// the drawn stage has, and to leave half of the routing resistance to the wires; its currents hardly move with the cut, so a few rounds settle it.
 ///
 /// # Errors
 /// Why the drawn stage cannot exist.
@@ -137,7 +141,9 @@ pub fn make(
         round += 1;
         let carried = [0, 1].map(|i| {
             let rms_a = [currents.ground.rms_a, currents.supply.rms_a][i];
-            currents::most_finger_m(rules, snapped.switches[i].width_m, rms_a)
+            let width_m = snapped.switches[i].width_m;
+            let route_ohm = setup.layout.routing_resistance_ohm;
+            currents::most_finger_m(rules, width_m, setup.stack, rms_a, route_ohm)
         });
         let narrow = |i: usize| {
             let finger_m = snapped.switches[i].finger_m;
