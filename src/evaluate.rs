@@ -1,8 +1,13 @@
 //! The composer: a design in, its evaluation out. The only place that puts the physics together.
 
+mod drawn;
 mod figures;
 mod limits;
 
+pub use drawn::{
+    DeviceFigures, Drawn, DrawnEvaluation, DrawnInductor, evaluate_drawn, spiral_of,
+    tapered_widths_m,
+};
 pub use figures::{AreaParts, Evaluation, Figures, evaluate, evaluate_with_coil, loop_waveform};
 pub use limits::{Limit, Margin, margins};
 
@@ -274,18 +279,37 @@ pub fn performance<S: Scalar>(
     core: &Core<S>,
     residual_v: [S; 2],
 ) -> Result<Performance<S>, Impossible> {
-    let (leg, period, network) = (&core.leg, &core.period, &core.circuit.network);
-    let f = setup.frequency_hz;
-    let legs = f64::from(setup.legs);
-    let gate_capacitance_f = leg.gate_capacitance_f(&setup.pair, residual_v);
+    let gate_capacitance_f = core.leg.gate_capacitance_f(&setup.pair, residual_v);
     let chain = Chain::new(
         &setup.chain,
         &setup.pair,
         sizing.stages,
-        leg.swing_v,
-        f,
+        core.leg.swing_v,
+        setup.frequency_hz,
         gate_capacitance_f,
     )?;
+    Ok(with_chain(
+        setup,
+        sizing,
+        coil,
+        core,
+        gate_capacitance_f,
+        chain,
+    ))
+}
+
+/// [`performance`] with the chain already known.
+fn with_chain<S: Scalar>(
+    setup: &Setup,
+    sizing: &Sizing<S>,
+    coil: &Coil<S>,
+    core: &Core<S>,
+    gate_capacitance_f: S,
+    chain: Chain<S>,
+) -> Performance<S> {
+    let (leg, period, network) = (&core.leg, &core.period, &core.circuit.network);
+    let f = setup.frequency_hz;
+    let legs = f64::from(setup.legs);
     let antenna = setup.network.antenna_resistance_ohm;
     let carrier_power_w = period.harmonic_v[0].squared() * (0.5 / antenna);
     let output_power_w = carrier_power_w * 10f64.powf(-0.1 * setup.antenna_loss_db);
@@ -310,7 +334,7 @@ pub fn performance<S: Scalar>(
         + losses.gate
         + losses.driver_chain
         + losses.mid_node;
-    Ok(Performance {
+    Performance {
         gate_capacitance_f,
         chain,
         carrier_power_w,
@@ -331,5 +355,5 @@ pub fn performance<S: Scalar>(
             total_power_w,
         ),
         losses,
-    })
+    }
 }

@@ -10,6 +10,7 @@ pub mod quantity;
 pub mod report;
 pub mod run;
 pub mod search;
+pub mod sheet;
 pub mod stage;
 pub mod steady;
 pub mod study;

@@ -4,7 +4,7 @@ use std::fs;
 use std::path::{Path, PathBuf};
 
 /// The way data takes, first to last. A room may use itself and what stands before it.
-const WAY: [&str; 14] = [
+const WAY: [&str; 15] = [
     "quantity",
     "numerics",
     "study",
@@ -16,6 +16,7 @@ const WAY: [&str; 14] = [
     "search",
     "run",
     "pick",
+    "sheet",
     "report",
     "fit",
     "cli",

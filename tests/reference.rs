@@ -9,7 +9,8 @@ use widefront::study::{
     Design, DriverChoice, Limits, Network, Objective, SearchSettings, StageChoice, Study, Swing,
 };
 use widefront::technology::{
-    Capacitor, Inductor, Layout, SpiralProcess, Technology, Transistor, TransistorPair, inductor,
+    Capacitor, Inductor, Layout, Rules, SpiralProcess, Technology, Transistor, TransistorPair,
+    inductor,
 };
 
 /// Both sides are exact to about 1e-11; squares of the reference come from a quadrature to 1e-12.
@@ -98,6 +99,7 @@ fn technology(v: &Value) -> Technology {
             supply_ripple: number(layout, "supply_ripple"),
             decoupling_density_f_m2: number(layout, "decoupling_density_f_m2"),
         },
+        rules: Rules::default(),
     }
 }
 

@@ -5,6 +5,7 @@ mod evaluate;
 mod fit;
 mod pick;
 mod search;
+mod sheet;
 
 use crate::evaluate::Setup;
 use crate::study::{self, Faults, StudyFile};
@@ -54,6 +55,8 @@ enum Command {
     Join(search::JoinArguments),
     /// The designs of a run that meet a specification, best first.
     Pick(pick::PickArguments),
+    /// The hand-off of one design to layout: snapped to the grid, evaluated again, drawn to scale.
+    Sheet(sheet::SheetArguments),
 }
 
 /// Why a command did not succeed.
@@ -89,6 +92,7 @@ pub fn run() -> ExitCode {
         Command::Search(arguments) => search::run(&arguments),
         Command::Join(arguments) => search::join(&arguments),
         Command::Pick(arguments) => pick::run(&arguments),
+        Command::Sheet(arguments) => sheet::run(&arguments),
     };
     match result {
         Ok(()) => ExitCode::SUCCESS,

@@ -2,7 +2,7 @@
 
 use super::{Failure, print};
 use crate::pick::{Catalogue, Condition, Figure, PickError, binding};
-use crate::run::folder::{read_front, read_run};
+use crate::run::folder::{read_all_fronts, read_front, read_run};
 use crate::run::records::{DesignList, DesignRecord};
 use serde_json::Value;
 use std::fmt::Write;
@@ -21,6 +21,9 @@ pub struct PickArguments {
     /// Order by this figure, the better first; further keys order what is equal [default: efficiency].
     #[arg(long, value_name = "KEY")]
     best: Vec<String>,
+    /// Look at the fronts of all cells, not at the overall front alone.
+    #[arg(long)]
+    all: bool,
     /// Print one JSON object and nothing else.
     #[arg(long)]
     json: bool,
@@ -38,7 +41,12 @@ impl From<PickError> for Failure {
 /// Picks and prints.
 pub fn run(arguments: &PickArguments) -> Result<(), Failure> {
     let run = read_run(&arguments.run)?;
-    let catalogue = Catalogue::new(read_front(&arguments.run)?.designs)?;
+    let list = if arguments.all {
+        read_all_fronts(&arguments.run)?
+    } else {
+        read_front(&arguments.run)?
+    };
+    let catalogue = Catalogue::new(list.designs)?;
     let at_least = arguments
         .at_least
         .iter()
@@ -125,7 +133,7 @@ fn row(text: &mut String, design: &DesignRecord, study: &Value) {
 /// Why nothing fits, and what comes nearest.
 fn nothing(catalogue: &Catalogue, conditions: &[Condition], study: &Value) -> String {
     const NEAREST: usize = 3;
-    let mut text = "no design of the front meets all conditions\n".to_owned();
+    let mut text = "no design looked at meets all conditions\n".to_owned();
     let percent = |x: f64| format!("{:.2} %", 100.0 * x);
     let alone = catalogue.least_shortfalls(conditions);
     for (condition, lack) in conditions.iter().zip(alone) {

@@ -1,14 +1,15 @@
 //! One design evaluated in full: every figure that is written, reported or handed on.
 
-use super::{FixedInductor, Limit, Performance, Setup, core, margins, performance};
+use super::{FixedInductor, Limit, Performance, Setup, core, margins, performance, with_chain};
 use crate::budget::Losses;
 use crate::numerics::scalar::Scalar;
+use crate::stage::driver::Chain;
 use crate::stage::{Coil, Impossible, Sizing};
 use crate::steady::period::ALL_HARMONICS;
 use crate::steady::waveform::{self, Waveform};
 use crate::study::Design;
-use crate::technology::Inductor;
-use crate::technology::inductor::{self, SpiralGeometry};
+use crate::technology::inductor::{self, SolvedSpiral, SpiralGeometry};
+use crate::technology::{Inductor, SpiralProcess};
 use serde::{Deserialize, Serialize};
 
 /// A design with its verdict and, if it can exist, its figures. Serialises as one flat JSON object.
@@ -123,7 +124,7 @@ pub fn evaluate(setup: &Setup, design: &Design) -> Evaluation {
     }
 }
 
-fn cannot_exist(design: Design, reason: &Impossible) -> Evaluation {
+pub(super) fn cannot_exist(design: Design, reason: &Impossible) -> Evaluation {
     Evaluation {
         feasible: false,
         reason: Some(reason.to_string()),
@@ -133,7 +134,7 @@ fn cannot_exist(design: Design, reason: &Impossible) -> Evaluation {
     }
 }
 
-fn sizing(values: &Design) -> Sizing<f64> {
+pub(super) fn sizing(values: &Design) -> Sizing<f64> {
     Sizing {
         supply_v: values.supply_v,
         loaded_q: values.loaded_q,
@@ -152,7 +153,7 @@ pub fn evaluate_with_coil(
     coil: &Coil<f64>,
     self_resonance_hz: Option<f64>,
 ) -> Evaluation {
-    match full_figures(setup, &values, coil, self_resonance_hz) {
+    match full_figures(setup, &values, coil, self_resonance_hz, None) {
         Ok((figures, broken_limits)) => Evaluation {
             feasible: broken_limits.is_empty(),
             reason: None,
@@ -164,16 +165,26 @@ pub fn evaluate_with_coil(
     }
 }
 
-fn full_figures(
+/// The figures and the limits broken; with `drivers_m` the chain is the drawn one, else the tapered one of the design.
+pub(super) fn full_figures(
     setup: &Setup,
     values: &Design,
     coil: &Coil<f64>,
     self_resonance_hz: Option<f64>,
+    drivers_m: Option<&[[f64; 2]]>,
 ) -> Result<(Figures, Vec<Limit>), Impossible> {
     let sizing = sizing(values);
     let core = core(setup, &sizing, coil, ALL_HARMONICS)?;
     let residual_v = core.period.residual_v.map(Scalar::positive_part);
-    let p: Performance<f64> = performance(setup, &sizing, coil, &core, residual_v)?;
+    let p: Performance<f64> = match drivers_m {
+        None => performance(setup, &sizing, coil, &core, residual_v)?,
+        Some(widths_m) => {
+            let gate_f = core.leg.gate_capacitance_f(&setup.pair, residual_v);
+            let (swing_v, f) = (core.leg.swing_v, setup.frequency_hz);
+            let chain = Chain::drawn(&setup.chain, &setup.pair, widths_m, swing_v, f, gate_f)?;
+            with_chain(setup, &sizing, coil, &core, gate_f, chain)
+        }
+    };
     let mut broken: Vec<Limit> = margins(setup, &sizing, &core, &p)
         .iter()
         .filter(|m| m.margin.is_nan() || m.margin < 0.0)
@@ -304,18 +315,30 @@ fn solve_coil(
                 trace_m,
                 diameter_m,
             };
-            let solved =
-                inductor::solve(process, &geometry, f).map_err(|_| Impossible::Spiral { turns })?;
-            let positive = |x: f64| x.is_finite() && x > 0.0;
-            if !positive(solved.inductance_h) || !positive(solved.resistance_ohm) {
-                return Err(Impossible::PastResonance);
-            }
-            let coil = Coil {
-                inductance_h: solved.inductance_h * legs,
-                resistance_ohm: solved.resistance_ohm * legs,
-                area_m2: inductor::footprint_m2(process, diameter_m) * legs,
-            };
+            let (coil, solved) = spiral_coil(setup, process, &geometry)?;
             Ok((coil, solved.self_resonance_hz))
         }
     }
+}
+
+/// The spirals of all legs as the loop sees them, and one of them solved.
+pub(super) fn spiral_coil(
+    setup: &Setup,
+    process: &SpiralProcess,
+    geometry: &SpiralGeometry,
+) -> Result<(Coil<f64>, SolvedSpiral), Impossible> {
+    let legs = f64::from(setup.legs);
+    let turns = geometry.turns;
+    let solved = inductor::solve(process, geometry, setup.frequency_hz)
+        .map_err(|_| Impossible::Spiral { turns })?;
+    let positive = |x: f64| x.is_finite() && x > 0.0;
+    if !positive(solved.inductance_h) || !positive(solved.resistance_ohm) {
+        return Err(Impossible::PastResonance);
+    }
+    let coil = Coil {
+        inductance_h: solved.inductance_h * legs,
+        resistance_ohm: solved.resistance_ohm * legs,
+        area_m2: inductor::footprint_m2(process, geometry.diameter_m) * legs,
+    };
+    Ok((coil, solved))
 }

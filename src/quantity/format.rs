@@ -47,6 +47,13 @@ pub fn format_in(value: f64, unit: &str) -> String {
     }
 }
 
+/// A length on a drawing grid, m, in micrometres with every digit down to 10 pm: `micrometres(3.0744e-4)` is `307.44 um`.
+pub fn micrometres(length_m: f64) -> String {
+    let text = format!("{:.5}", length_m * 1e6);
+    let text = text.trim_end_matches('0').trim_end_matches('.');
+    format!("{text} um")
+}
+
 /// A finite value rounded for people: ±d.ddd·10^exponent.
 struct Decimal {
     negative: bool,

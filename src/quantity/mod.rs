@@ -12,7 +12,7 @@ mod format;
 mod unit;
 
 pub use dimension::Dimension;
-pub use format::{format, format_in};
+pub use format::{format, format_in, micrometres};
 
 use unit::{SYMBOLS, Unit};
 

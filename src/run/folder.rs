@@ -213,3 +213,19 @@ pub fn read_front(path: &Path) -> Result<super::records::DesignList, RunError> {
         reason: format!("is damaged: {e}"),
     })
 }
+
+/// Reads the fronts of all cells that are finished, in their order.
+///
+/// # Errors
+/// As [`read_run`] and [`read_cell`].
+pub fn read_all_fronts(path: &Path) -> Result<super::records::DesignList, RunError> {
+    let run = read_run(path)?;
+    let cells = run["cells"].as_u64().unwrap_or(0) as usize;
+    let mut designs = Vec::new();
+    for cell in 0..cells {
+        if let Some(record) = read_cell(path, cell)? {
+            designs.extend(record.designs);
+        }
+    }
+    Ok(super::records::DesignList { designs })
+}

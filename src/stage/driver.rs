@@ -92,6 +92,52 @@ impl<S: Scalar> Chain<S> {
     }
 }
 
+/// Input and own capacitance of a drawn inverter, F: c_in and c_self with N and P as wide as drawn.
+pub fn drawn_capacitances_f(pair: &WarmPair, widths_m: [f64; 2], swing_v: f64) -> [f64; 2] {
+    let [n, p] = widths_m;
+    let (input, own) = inverter_capacitances(pair, p / n, swing_v);
+    [n * input, n * own]
+}
+
+impl Chain<f64> {
+    /// The chain as drawn, N and P of each stage with widths of their own, first stage first (not empty):
+    /// (9) as it is, `P_chain = (1+κ)fV²[Σ C_self,i + Σ_{i≥2} C_in,i]`,
+    /// `t_edge = ln 9·½(r_e,n/w_n + r_e,p/w_p)(C_g + C_self,N)`; with exact taper and ratio these are (10) and (11).
+    /// The taper is the mean one, `nmos_width_sum_m` the NMOS widths at the ratio β_r that take the drawn area.
+    ///
+    /// # Errors
+    /// As [`Chain::new`].
+    pub fn drawn(
+        givens: &ChainGivens,
+        pair: &WarmPair,
+        widths_m: &[[f64; 2]],
+        swing_v: f64,
+        frequency_hz: f64,
+        gate_capacitance_f: f64,
+    ) -> Result<Self, Impossible> {
+        let last = widths_m.last().ok_or(Impossible::Numbers)?;
+        let stages: Vec<[f64; 2]> = widths_m
+            .iter()
+            .map(|w| drawn_capacitances_f(pair, *w, swing_v))
+            .collect();
+        let own_f: f64 = stages.iter().map(|s| s[1]).sum();
+        let between_f: f64 = stages[1..].iter().map(|s| s[0]).sum();
+        let energy = swing_v * swing_v * ((1.0 + givens.crowbar) * frequency_hz);
+        let edge_ohm = 0.5
+            * (device_edge_resistance_ohm_m(&pair.nmos, swing_v)? / last[0]
+                + device_edge_resistance_ohm_m(&pair.pmos, swing_v)? / last[1]);
+        Ok(Self {
+            taper: (gate_capacitance_f / stages[0][0]).powf(1.0 / stages.len() as f64),
+            nmos_width_sum_m: widths_m.iter().map(|[n, p]| n + p).sum::<f64>()
+                / (1.0 + givens.ratio),
+            last_nmos_width_m: last[0],
+            gate_power_w: energy * gate_capacitance_f,
+            chain_power_w: energy * (own_f + between_f),
+            edge_time_s: edge_ohm * (gate_capacitance_f + stages[stages.len() - 1][1]) * LN_9,
+        })
+    }
+}
+
 /// r_edge = ½(r_e,n + r_e,p/β_r), Ω·m.
 fn edge_resistance_ohm_m<S: Scalar>(
     pair: &WarmPair,

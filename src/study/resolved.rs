@@ -7,7 +7,7 @@ use serde::{Deserialize, Serialize};
 use std::path::PathBuf;
 
 /// One question asked of the program: which stage, which bands of choice, which limits.
-#[derive(Debug, Clone, PartialEq, Serialize)]
+#[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
 pub struct Study {
     /// Title as written by the user.
     pub title: String,
@@ -36,7 +36,7 @@ pub struct Study {
 }
 
 /// How many output legs and stacked devices, which transistor pair, which network.
-#[derive(Debug, Clone, PartialEq, Serialize)]
+#[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
 pub struct StageChoice {
     /// 1 = single-ended, 2 = differential (`B`).
     pub legs: u32,
@@ -59,7 +59,7 @@ pub enum Network {
 }
 
 /// What the chain that drives the output gates is given.
-#[derive(Debug, Clone, PartialEq, Serialize)]
+#[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
 pub struct DriverChoice {
     /// Capacitance the previous block can drive, C_in, F.
     pub input_capacitance_f: f64,
@@ -72,7 +72,7 @@ pub struct DriverChoice {
 }
 
 /// Swing of the driver of an unstacked leg.
-#[derive(Debug, Clone, Copy, PartialEq, Serialize)]
+#[derive(Debug, Clone, Copy, PartialEq, Serialize, Deserialize)]
 #[serde(rename_all = "snake_case")]
 pub enum Swing {
     /// The driver runs from the output stage's own supply.
@@ -82,7 +82,7 @@ pub enum Swing {
 }
 
 /// The values one variable may take.
-#[derive(Debug, Clone, PartialEq, Serialize)]
+#[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
 #[serde(rename_all = "snake_case")]
 pub enum Range {
     /// One value.
@@ -101,7 +101,7 @@ pub enum Range {
 /// The variables of a search, SI. Those that the network and the technology do not use are absent:
 /// a spiral takes `turns`, `diameter_m` and (low-pass) `trace_m`; a fixed inductor takes (low-pass)
 /// `resistance_ohm`.
-#[derive(Debug, Clone, PartialEq, Serialize)]
+#[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
 pub struct Space {
     /// V_DD, V.
     pub supply_v: Range,
@@ -128,7 +128,7 @@ pub struct Space {
 }
 
 /// A figure's allowed interval; `None` = unbounded.
-#[derive(Debug, Clone, Copy, PartialEq, Default, Serialize)]
+#[derive(Debug, Clone, Copy, PartialEq, Default, Serialize, Deserialize)]
 pub struct Bounds {
     /// Lowest allowed value.
     pub at_least: Option<f64>,
@@ -137,7 +137,7 @@ pub struct Bounds {
 }
 
 /// Limits the user sets. Those that physics sets (rating, clamps) hold always and are not here.
-#[derive(Debug, Clone, PartialEq, Default, Serialize)]
+#[derive(Debug, Clone, PartialEq, Default, Serialize, Deserialize)]
 pub struct Limits {
     /// Longest 10 to 90 % edge of the output gates, a fraction of the period.
     pub edge_time: Option<f64>,
@@ -168,7 +168,7 @@ pub enum Objective {
 }
 
 /// How the search is to run.
-#[derive(Debug, Clone, PartialEq, Serialize)]
+#[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
 pub struct SearchSettings {
     /// One to three different objectives.
     pub objectives: Vec<Objective>,

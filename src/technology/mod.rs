@@ -3,6 +3,7 @@
 mod fit;
 pub mod inductor;
 mod read;
+mod rules;
 pub mod transistor;
 mod types;
 

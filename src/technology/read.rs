@@ -2,7 +2,7 @@
 
 use super::types::*;
 use crate::quantity::Dimension;
-use crate::study::figure::{Figure, above, between, number, quantity, within};
+use crate::study::figure::{Figure, above, between, number, quantity, whole, within};
 use crate::study::raw::{Section, load, walk};
 use crate::study::{FaultKind, Faults, Lines, Warning, WarningKind};
 use std::path::Path;
@@ -65,6 +65,9 @@ fn build(root: &Section<'_, '_>) -> Technology {
         inductor: inductor(&root.section("inductor")),
         capacitor: capacitor(&root.section("capacitor")),
         layout: layout(&root.section("layout")),
+        rules: root
+            .optional_section("rules")
+            .map_or_else(Rules::default, |section| rules(&section)),
     }
 }
 
@@ -177,5 +180,49 @@ fn layout(section: &Section<'_, '_>) -> Layout {
         width_area_m: section.required("width_area", pitch),
         supply_ripple: section.required("supply_ripple", number(between(0.0, 1.0))),
         decoupling_density_f_m2: section.required("decoupling_density", density),
+    }
+}
+
+fn rules(section: &Section<'_, '_>) -> Rules {
+    let length = |key, from| section.optional(key, quantity(Dimension::Length, above(from, 1e-3)));
+    let density = quantity(Dimension::CurrentPerLength, above(0.0, 1e6));
+    let (least_finger_m, most_finger_m) = (length("least_finger", 0.0), length("most_finger", 0.0));
+    if let (Some(from), Some(to)) = (least_finger_m, most_finger_m)
+        && from > to
+    {
+        let show = |value| Dimension::Length.show(value);
+        section.fault(
+            "least_finger",
+            FaultKind::NotRising {
+                low: "least_finger",
+                high: "most_finger",
+                from: show(from),
+                to: show(to),
+            },
+        );
+    }
+    Rules {
+        grid_m: length("grid", 1e-11),
+        least_finger_m,
+        most_finger_m,
+        most_fingers: section
+            .optional("most_fingers", whole(2, 10_000))
+            .map(|count| count as u32),
+        finger_pitch_m: length("finger_pitch", 0.0),
+        finger_metal_width_m: length("finger_metal_width", 0.0),
+        finger_sheet_resistance_ohm: section.optional(
+            "finger_sheet_resistance",
+            quantity(Dimension::Resistance, within(0.0, 10.0)),
+        ),
+        finger_current_a_m: section.optional("finger_current", density),
+        top_current_a_m: section.optional("top_current", density),
+        current_temperature_k: section.optional(
+            "current_temperature",
+            quantity(Dimension::Temperature, within(200.0, 500.0)),
+        ),
+        capacitor_unit_f: section.optional(
+            "capacitor_unit",
+            quantity(Dimension::Capacitance, above(0.0, 1e-9)),
+        ),
     }
 }

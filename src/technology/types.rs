@@ -1,9 +1,11 @@
 //! A technology after validation: plain SI numbers.
 
-use serde::Serialize;
+pub use super::rules::{DrawingRules, Rules};
+
+use serde::{Deserialize, Serialize};
 
 /// Everything a process gives a designer of an output stage.
-#[derive(Debug, Clone, PartialEq, Serialize)]
+#[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
 pub struct Technology {
     /// Name as written in the file.
     pub name: String,
@@ -17,10 +19,13 @@ pub struct Technology {
     pub capacitor: Capacitor,
     /// Layout rules that cost area or resistance.
     pub layout: Layout,
+    /// What a drawing must keep; a `sheet` needs it, nothing else does.
+    #[serde(default, skip_serializing_if = "Rules::is_empty")]
+    pub rules: Rules,
 }
 
 /// An NMOS and a PMOS of one oxide.
-#[derive(Debug, Clone, PartialEq, Serialize)]
+#[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
 pub struct TransistorPair {
     /// Highest gate and drain voltage V_max, V.
     pub rating_v: f64,
@@ -33,7 +38,7 @@ pub struct TransistorPair {
 }
 
 /// One polarity; capacitances, currents and resistances per metre of gate width.
-#[derive(Debug, Clone, PartialEq, Serialize)]
+#[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
 pub struct Transistor {
     /// k' = µ·Cox at T0, A/V².
     pub transconductance_a_v2: f64,
@@ -66,7 +71,7 @@ pub struct Transistor {
 }
 
 /// The inductor of the series branch.
-#[derive(Debug, Clone, PartialEq, Serialize)]
+#[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
 #[serde(tag = "model", rename_all = "snake_case")]
 pub enum Inductor {
     /// A planar spiral solved by filaments.
@@ -83,7 +88,7 @@ pub enum Inductor {
 }
 
 /// What the process gives a spiral.
-#[derive(Debug, Clone, PartialEq, Serialize)]
+#[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
 pub struct SpiralProcess {
     /// Resistivity of the metal ρ, Ω·m.
     pub resistivity_ohm_m: f64,
@@ -106,7 +111,7 @@ pub struct SpiralProcess {
 }
 
 /// Metal or oxide capacitor.
-#[derive(Debug, Clone, PartialEq, Serialize)]
+#[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
 pub struct Capacitor {
     /// F/m².
     pub density_f_m2: f64,
@@ -117,7 +122,7 @@ pub struct Capacitor {
 }
 
 /// Layout givens.
-#[derive(Debug, Clone, PartialEq, Serialize)]
+#[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
 pub struct Layout {
     /// R_route in series with each switch, Ω.
     pub routing_resistance_ohm: f64,

@@ -5,7 +5,9 @@ use std::path::PathBuf;
 use widefront::study::{
     Design, DriverChoice, Limits, Network, Objective, SearchSettings, StageChoice, Study, Swing,
 };
-use widefront::technology::{Capacitor, Inductor, Layout, Technology, Transistor, TransistorPair};
+use widefront::technology::{
+    Capacitor, Inductor, Layout, Rules, Technology, Transistor, TransistorPair,
+};
 
 /// A technology whose transistors are nothing but resistance and whose passives are lossless: limits are recovered on it.
 pub fn ideal_technology() -> Technology {
@@ -54,6 +56,7 @@ pub fn ideal_technology() -> Technology {
             supply_ripple: 0.05,
             decoupling_density_f_m2: 6e-3,
         },
+        rules: Rules::default(),
     }
 }
 
