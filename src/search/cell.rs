@@ -37,7 +37,11 @@ pub struct CellFront {
 /// Searches one cell; `None` when `stop` was raised before it was done.
 pub fn search_cell(context: &Context<'_>, cell: &Cell, stop: &AtomicBool) -> Option<CellFront> {
     let slices = slices(context.space, cell);
-    let (found, evaluations) = Tracer::new(context, &slices, stop).run(cell);
+    let mut tracer = Tracer::new(context, &slices, stop);
+    tracer.run(cell);
+    let Tracer {
+        found, evaluations, ..
+    } = tracer;
     let mut front = CellFront {
         cell: *cell,
         points: Vec::new(),
@@ -45,6 +49,22 @@ pub fn search_cell(context: &Context<'_>, cell: &Cell, stop: &AtomicBool) -> Opt
     };
     front.fill(context, &slices, &found, stop);
     (!stop.load(Ordering::Relaxed)).then_some(front)
+}
+
+/// Searches one cell, then asks it for the best efficiency under each of `demands`: output power at least, W, and area at
+/// most, m². None where no design meets one. The assessments of both come with it.
+pub fn best_efficiencies(
+    context: &Context<'_>,
+    cell: &Cell,
+    demands: &[[f64; 2]],
+) -> (Vec<Option<f64>>, u64) {
+    let (slices, never) = (slices(context.space, cell), AtomicBool::new(false));
+    let mut tracer = Tracer::new(context, &slices, &never);
+    tracer.run(cell);
+    let targets: Vec<[f64; 2]> = demands.iter().map(|d| d.map(f64::ln)).collect();
+    let answers = tracer.answers(&targets);
+    let efficiencies = answers.into_iter().map(|a| a.map(f64::exp)).collect();
+    (efficiencies, tracer.evaluations)
 }
 
 impl CellFront {

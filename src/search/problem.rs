@@ -50,6 +50,8 @@ pub struct Merits<S> {
     pub objectives: [S; 3],
     /// Each ≥ 0.
     pub limits: ArrayVec<S, MOST_CONSTRAINTS>,
+    /// Drain voltages counted as still to swing when N and P turn on, fractions of the supply.
+    pub residual: [S; 2],
 }
 
 /// A slice with a goal.
@@ -91,14 +93,12 @@ impl<'a> SliceProblem<'a> {
         self.slice.axes.len()
     }
 
-    /// Objectives and limits at a point, without gradients.
+    /// Objectives and limits of the design at `places` of the axes, without gradients.
     ///
     /// # Errors
-    /// Why the design at this point cannot exist.
-    pub fn merits(&self, point: &Row) -> Result<Merits<f64>, Impossible> {
-        let axes = self.axes();
-        let values = self.slice.values(|i| point[i]);
-        self.merits_at(&values, [point[axes], point[axes + 1]])
+    /// Why the design cannot exist.
+    pub fn merits(&self, places: &[f64]) -> Result<Merits<f64>, Impossible> {
+        self.merits_at(&self.slice.values(|i| places[i]), None)
     }
 
     /// The same with gradients.
@@ -109,30 +109,29 @@ impl<'a> SliceProblem<'a> {
         let axes = self.axes();
         let values = self.slice.values(|i| Dual::<N>::variable(point[i], i));
         let residual = [0, 1].map(|k| Dual::variable(point[axes + k], axes + k));
-        self.merits_at(&values, residual)
+        self.merits_at(&values, Some(residual))
     }
 
-    /// For any scalar; the residuals are fractions of the supply.
+    /// For any scalar; the residuals are those of the steady state or bounds on them, fractions of the supply.
     fn merits_at<S: Scalar>(
         &self,
         values: &Values<S>,
-        residual: [S; 2],
+        residual: Option<[S; 2]>,
     ) -> Result<Merits<S>, Impossible> {
         let mut limits = ArrayVec::new();
         let mut push = |margin: S, reserve: f64| limits.push(margin - reserve);
         let sizing = values.sizing(self.slice.stages);
         let coil = coil(self.setup, &self.coil, values)?;
         let core = core(self.setup, &sizing, &coil, self.setup.limited_harmonics())?;
+        let found = core.period.residual_v.map(|v| v / sizing.supply_v);
+        let residual = residual.unwrap_or(found.map(S::positive_part));
         let residual_v = residual.map(|r| r * sizing.supply_v);
         let p = performance(self.setup, &sizing, &coil, &core, residual_v)?;
         for m in margins(self.setup, &sizing, &core, &p) {
             push(m.margin, LIMIT_RESERVE);
         }
         for k in 0..2 {
-            push(
-                residual[k] - core.period.residual_v[k] / sizing.supply_v,
-                0.0,
-            );
+            push(residual[k] - found[k], 0.0);
         }
         let network = &core.circuit.network;
         let series_reactance =
@@ -162,6 +161,7 @@ impl<'a> SliceProblem<'a> {
         Ok(Merits {
             objectives: [p.efficiency, p.output_power_w, p.area.total_m2()].map(S::ln),
             limits,
+            residual,
         })
     }
 }
@@ -313,7 +313,9 @@ impl Constrained for SliceProblem<'_> {
 
 impl SliceProblem<'_> {
     fn assess_in<const N: usize>(&self, point: &Row) -> Option<Assessment> {
-        let Merits { objectives, limits } = self.merits_with_gradients::<N>(point).ok()?;
+        let Merits {
+            objectives, limits, ..
+        } = self.merits_with_gradients::<N>(point).ok()?;
         let [efficiency, power, area] = objectives;
         let cost = match self.goal.best {
             Objective::Efficiency => -efficiency,

@@ -30,8 +30,10 @@ const SAME_HILL: f64 = 0.02;
 pub(super) struct Tracer<'a> {
     context: &'a Context<'a>,
     slices: &'a [Slice],
-    evaluations: u64,
-    found: Vec<Solved>,
+    /// Assessments spent.
+    pub evaluations: u64,
+    /// Everything found.
+    pub found: Vec<Solved>,
     /// What each slice is known to reach.
     reached: Vec<Reached>,
     stop: &'a AtomicBool,
@@ -49,8 +51,8 @@ impl<'a> Tracer<'a> {
         }
     }
 
-    /// Everything found, and the assessments it took.
-    pub fn run(mut self, cell: &Cell) -> (Vec<Solved>, u64) {
+    /// Traces the front.
+    pub fn run(&mut self, cell: &Cell) {
         let trades = |o| self.context.objectives.contains(&o);
         let primary = [
             Objective::Efficiency,
@@ -69,15 +71,20 @@ impl<'a> Tracer<'a> {
         // The first column has all the area it asks for.
         let levels = self.context.effort.levels;
         let Some(top) = self.best_at(&NO_TARGET, primary) else {
-            return (self.found, self.evaluations);
+            return;
         };
         let mut rows = None;
         if targets_power && let Some(most_power) = self.strongest(&NO_TARGET) {
-            rows = Some(Rows {
+            let shared = Rows {
                 origin: top.merits[1],
                 step: (most_power - top.merits[1]) / levels as f64,
-            });
-            self.column(&NO_TARGET, primary, rows, &top, most_power);
+            };
+            self.column(
+                &NO_TARGET,
+                primary,
+                shared.between(top.merits[1], most_power),
+            );
+            rows = Some(shared);
         }
         if targets_area && let Some(least_area) = self.smallest_of(self.least_of_corners()) {
             let most_area = self
@@ -97,17 +104,29 @@ impl<'a> Tracer<'a> {
                     break;
                 };
                 alive = self.alive(&column);
-                if rows.is_some()
+                if let Some(rows) = rows
                     && let Some(most_power) = self.strongest(&column)
                 {
-                    self.column(&column, primary, rows, &first, most_power);
+                    self.column(&column, primary, rows.between(first.merits[1], most_power));
                 }
             }
             for slice in alive {
                 self.smallest_of(Some(slice));
             }
         }
-        (self.found, self.evaluations)
+    }
+
+    /// The best efficiency under further targets (ln W at least, ln m² at most), ln; none where nothing meets one.
+    pub fn answers(&mut self, targets: &[[f64; 2]]) -> Vec<Option<f64>> {
+        let at = |tracer: &mut Self, &[least_power, most_area]: &[f64; 2]| {
+            let target = Target {
+                least_power,
+                most_area,
+            };
+            let best = tracer.best_at(&target, Objective::Efficiency)?;
+            Some(best.merits[0])
+        };
+        targets.iter().map(|t| at(self, t)).collect()
     }
 
     /// Slices that may still reach a target.
@@ -117,17 +136,9 @@ impl<'a> Tracer<'a> {
             .collect()
     }
 
-    /// The best at every row of a column between its first point and its strongest.
-    fn column(
-        &mut self,
-        column: &Target,
-        primary: Objective,
-        rows: Option<Rows>,
-        first: &Solved,
-        most_power: f64,
-    ) {
-        let Some(rows) = rows else { return };
-        for least_power in rows.between(first.merits[1], most_power) {
+    /// The best at every row of a column.
+    fn column(&mut self, column: &Target, primary: Objective, rows: impl Iterator<Item = f64>) {
+        for least_power in rows {
             let target = Target {
                 least_power,
                 ..*column
@@ -344,8 +355,9 @@ impl<'a> Tracer<'a> {
         let axes = self.slices[slice].axes.len();
         (0..samples)
             .map(|number| self.context.start(cell, slice, number, axes))
-            .filter_map(|point| {
-                let merits = problem.merits(&point).ok()?;
+            .filter_map(|mut point| {
+                let merits = problem.merits(&point[..axes]).ok()?;
+                point[axes..axes + 2].copy_from_slice(&merits.residual);
                 let broken = merits.limits.iter().map(|l| (-l).max(0.0)).sum();
                 Some(Drawn {
                     point,
@@ -450,13 +462,11 @@ fn neighbour(corners: &[Vec<Option<Solved>>], slice: Option<usize>, which: usize
     Some(solved.point)
 }
 
-/// A point of the box, residual voltages at their most likely place: all of the supply.
+/// A point of the box.
 pub(super) fn start_point(axes: usize, mut place: impl FnMut() -> f64) -> Row {
     let mut point = [0.0; MOST_VARIABLES];
     for slot in point.iter_mut().take(axes) {
         *slot = place();
     }
-    point[axes] = 1.0;
-    point[axes + 1] = 1.0;
     point
 }
