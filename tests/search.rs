@@ -163,6 +163,22 @@ fn law_the_same_bytes_at_any_thread_count_in_parts_and_after_damage() {
     assert!(complaints.contains("in none of the parts: 2"));
     join(&parts).success();
     assert!(read(&at("joined"), "front.csv") == front);
+    // A join that was broken off is done again.
+    fs::remove_file(at("joined").join("cells/00002.json")).unwrap();
+    fs::remove_file(at("joined").join("front.csv")).unwrap();
+    join(&parts).success();
+    assert!(read(&at("joined"), "front.csv") == front);
+    // Into a folder of another run it is refused.
+    let refused = Command::cargo_bin("widefront")
+        .unwrap()
+        .arg("join")
+        .arg(study_path("quick.toml"))
+        .arg(&parts[0])
+        .args(&parts)
+        .assert()
+        .code(1);
+    let complaints = String::from_utf8(refused.get_output().stderr.clone()).unwrap();
+    assert!(complaints.contains("part \"1/3\""), "{complaints}");
     assert!(read(&at("joined"), "cells.csv") == read(&one, "cells.csv"));
 }
 
@@ -186,5 +202,14 @@ fn law_what_cannot_be_written_is_an_error_and_no_panic() {
     let early = temp.path().join("early");
     fs::create_dir_all(early.join("cells")).unwrap();
     fs::write(early.join("lock"), "").unwrap();
+    let leftover = early.join(".run.json.Ab12Cd");
+    fs::write(&leftover, "{").unwrap();
     search(&["--quiet", "--part", "1/4", "--out", early.to_str().unwrap()]).success();
+    assert!(!leftover.exists());
+    // Cells of who knows which study are not taken for this one's.
+    fs::remove_file(early.join("run.json")).unwrap();
+    for list in ["front.csv", "front.json", "cells.csv"] {
+        fs::remove_file(early.join(list)).unwrap();
+    }
+    search(&["--quiet", "--part", "1/4", "--out", early.to_str().unwrap()]).code(2);
 }

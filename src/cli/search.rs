@@ -142,8 +142,11 @@ fn close(loaded: &Loaded, out: &Path, finished: Finished) -> Result<(), Failure>
         sweep: finished.sweep.as_ref(),
         period: finished.period.as_ref(),
     };
-    figures::write_all(&finished.folder.path().join("figures"), &input)
-        .map_err(|e| Failure::Run(e.to_string()))?;
+    figures::write_all(&finished.folder.path().join("figures"), &input).map_err(|e| {
+        Failure::Run(format!(
+            "{e}; the run is whole but for its figures; mend this and draw them by search --resume"
+        ))
+    })?;
     let mut text = String::new();
     // Writing to a String cannot fail.
     let _ = writeln!(

@@ -141,7 +141,12 @@ pub fn run(
     } else {
         RunFolder::create(job.out)?
     };
-    folder.write_json("run.json", &record)?;
+    let begun = folder.write_json("run.json", &record);
+    if job.resume {
+        begun?;
+    } else {
+        begun.map_err(RunError::before_work)?;
+    }
 
     let cells: Vec<Cell> = space::cells(space)
         .into_iter()
@@ -459,8 +464,16 @@ pub fn join(
             missing.join(", ")
         )));
     }
-    let folder = RunFolder::create(job.out)?;
-    folder.write_json("run.json", &wanted)?;
+    let folder = if job.out.join("run.json").exists() {
+        // A join that did not end is done again.
+        let folder = RunFolder::open(job.out)?;
+        same_run(job.out, &read_run(job.out)?, &wanted)?;
+        folder
+    } else {
+        RunFolder::create(job.out)?
+    };
+    let begun = folder.write_json("run.json", &wanted);
+    begun.map_err(RunError::before_work)?;
     for (cell, path) in cells.iter().zip(&records) {
         let bytes = std::fs::read(path).map_err(|error| RunError::Io {
             path: path.clone(),
