@@ -1,7 +1,9 @@
 //! Run folders: records, writing, reading, going on, joining.
 
 pub mod folder;
+pub mod join;
 pub mod records;
+mod same;
 pub mod session;
 pub mod summary;
 mod table;

@@ -324,6 +324,7 @@ impl Tracer<'_> {
             && !matches!(solver.ended, Ended::NoStart | Ended::Infeasible);
         let merits = self.problem(slice, goal)?.merits(&solver.point);
         self.evaluations += spent + 1;
+        self.context.count(spent + 1);
         let merits = merits.ok().filter(|_| feasible)?;
         Some(Solved {
             slice,
@@ -384,6 +385,7 @@ impl Tracer<'_> {
             })
             .collect();
         self.evaluations += SAMPLES as u64;
+        self.context.count(SAMPLES as u64);
         drawn.sort_by(|a, b| a.0.total_cmp(&b.0));
         drawn.into_iter().map(|(_, p)| p).collect()
     }
@@ -445,6 +447,7 @@ impl Tracer<'_> {
             let design = slice.design(&solved.point[..slice.axes.len()]);
             let evaluation = evaluate(self.context.setup, &design);
             self.evaluations += 1;
+            self.context.count(1);
             // The reserve kept to each limit covers the interpolation; what fails nonetheless is no answer.
             if evaluation.feasible {
                 points.push(FrontPoint {
