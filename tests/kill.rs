@@ -1,6 +1,11 @@
 //! A search that is killed at any moment goes on to the same bytes; signals end it with what is finished kept.
 
+#[path = "common/program.rs"]
+mod program;
+
+use program::{STUDY, search};
 use std::fs;
+use std::io::{BufRead, BufReader};
 use std::path::Path;
 use std::process::{Child, Command, Stdio};
 use std::time::{Duration, Instant};
@@ -10,35 +15,27 @@ const KILLS: u64 = 20;
 /// A signal ends a search within a second; one more for a machine that is busy with other tests.
 const LONGEST_END: Duration = Duration::from_secs(2);
 
-const STUDY: &str = concat!(env!("CARGO_MANIFEST_DIR"), "/configs/studies/quick.toml");
-
-fn program(out: &Path, resume: bool) -> Command {
-    program_on(Path::new(STUDY), out, resume)
-}
-
-fn program_on(study: &Path, out: &Path, resume: bool) -> Command {
-    let mut command = Command::new(env!("CARGO_BIN_EXE_widefront"));
-    command
-        .arg("search")
-        .arg(study)
-        .arg("--quiet")
-        .arg("--out")
-        .arg(out);
-    if resume {
-        command.arg("--resume");
-    }
-    command.stdout(Stdio::null()).stderr(Stdio::null());
+fn program(study: &Path, out: &Path, resume: bool) -> Command {
+    let mut command = search(study, out, resume);
+    command.stderr(Stdio::null());
     command
 }
 
 fn start(out: &Path) -> Child {
-    program(out, out.join("run.json").exists()).spawn().unwrap()
+    program(Path::new(STUDY), out, out.join("run.json").exists())
+        .spawn()
+        .unwrap()
 }
 
 fn unbroken(folder: &Path) -> (Vec<u8>, Duration) {
     let out = folder.join("unbroken");
     let began = Instant::now();
-    assert!(program(&out, false).status().unwrap().success());
+    assert!(
+        program(Path::new(STUDY), &out, false)
+            .status()
+            .unwrap()
+            .success()
+    );
     let front = fs::read(out.join("front.csv")).unwrap();
     (front, began.elapsed())
 }
@@ -133,7 +130,12 @@ fn law_signals_end_a_search_with_what_is_finished_kept() {
         let run: serde_json::Value =
             serde_json::from_slice(&fs::read(out.join("run.json")).unwrap()).unwrap();
         assert_eq!(run["ended_because"], "stopped");
-        assert!(program(&out, true).status().unwrap().success());
+        assert!(
+            program(Path::new(STUDY), &out, true)
+                .status()
+                .unwrap()
+                .success()
+        );
         assert!(fs::read(out.join("front.csv")).unwrap() == front);
     }
 }
@@ -149,10 +151,34 @@ fn law_a_signal_before_the_first_cell_ends_it_too() {
         .replace("../", configs)
         .replace("{ from = 1, to = 3 }", "{ from = 1, to = 16 }");
     fs::write(&study, text).unwrap();
-    let mut child = program_on(&study, &out, false).spawn().unwrap();
+    let mut child = program(&study, &out, false).spawn().unwrap();
     while !out.join("run.json").exists() {
         std::thread::sleep(Duration::from_millis(5));
     }
     assert_eq!(ended_by("TERM", &mut child), Some(1));
     assert!(!holds_files(&out.join("cells")));
+}
+
+/// Nobody need wait for a cell to see that it works.
+#[test]
+fn law_progress_on_a_pipe_is_a_plain_line_between_cells_too() {
+    let temp = tempfile::tempdir().unwrap();
+    let study = concat!(env!("CARGO_MANIFEST_DIR"), "/configs/studies/default.toml");
+    let mut child = Command::new(env!("CARGO_BIN_EXE_widefront"))
+        .args(["search", study, "--threads", "1", "--out"])
+        .arg(temp.path().join("run"))
+        .stdout(Stdio::null())
+        .stderr(Stdio::piped())
+        .spawn()
+        .unwrap();
+    let said = BufReader::new(child.stderr.take().unwrap());
+    let mut lines = said.lines().map(Result::unwrap);
+    let line = lines.find(|line| !line.ends_with("tabulating inductors"));
+    let line = line.unwrap();
+    assert_eq!(ended_by("INT", &mut child), Some(1));
+    let (cells, rest) = line.split_once("/81 cells, ").expect(&line);
+    assert!(cells.parse::<u32>().unwrap() <= 81);
+    let (rate, rest) = rest.split_once(" evaluations/s, time left ").expect(&line);
+    assert!(rate.parse::<f64>().unwrap() > 0.0);
+    assert!(rest.contains(", best efficiency ") && !line.contains('\r'));
 }

@@ -1,5 +1,8 @@
 //! A full disk and a read-only one, as small file systems in memory: told plainly, nothing lost, the same bytes after.
 
+#[path = "common/program.rs"]
+mod program;
+
 use std::collections::BTreeMap;
 use std::fs;
 use std::io::{BufRead, BufReader, Write};
@@ -73,18 +76,9 @@ impl Drop for Disk {
 
 /// Exit code and what was said on standard error.
 fn search(out: &Path, resume: bool) -> (i32, String) {
-    let study = Path::new(env!("CARGO_MANIFEST_DIR")).join("configs/studies/quick.toml");
-    let mut command = Command::new(env!("CARGO_BIN_EXE_widefront"));
-    command
-        .arg("search")
-        .arg(study)
-        .arg("--quiet")
-        .arg("--out")
-        .arg(out);
-    if resume {
-        command.arg("--resume");
-    }
-    let output = command.stdout(Stdio::null()).output().unwrap();
+    let output = program::search(Path::new(program::STUDY), out, resume)
+        .output()
+        .unwrap();
     (
         output.status.code().unwrap(),
         String::from_utf8(output.stderr).unwrap(),
@@ -96,7 +90,8 @@ fn unbroken() -> &'static Path {
     static RUN: OnceLock<tempfile::TempDir> = OnceLock::new();
     RUN.get_or_init(|| {
         let run = tempfile::tempdir().unwrap();
-        assert_eq!(search(&run.path().join("run"), false).0, 0);
+        // And quiet says nothing.
+        assert_eq!(search(&run.path().join("run"), false), (0, String::new()));
         run
     })
     .path()

@@ -21,6 +21,7 @@ pub struct Progress {
 }
 
 struct State {
+    /// Of the evaluations: the inductors are tabulated before.
     began: Instant,
     last_line: Instant,
     /// Cells in all.
@@ -67,6 +68,9 @@ impl Progress {
 
 impl State {
     fn described(&self, elapsed: Duration) -> String {
+        if self.spent == 0 {
+            return "tabulating inductors".into();
+        }
         let rate = self.spent as f64 / elapsed.as_secs_f64().max(1e-9);
         let best = self
             .finished
@@ -131,6 +135,9 @@ impl Observer for Progress {
             return;
         };
         state.spent = evaluations;
+        if evaluations == 0 {
+            state.began = Instant::now();
+        }
         let elapsed = state.began.elapsed();
         if let Some(bar) = &self.bar {
             bar.set_message(state.described(elapsed));
@@ -165,6 +172,7 @@ mod tests {
         let progress = Progress::new(true);
         let mut state = progress.state.into_inner().unwrap();
         state.cells = 10;
+        assert_eq!(state.described(Duration::ZERO), "tabulating inductors");
         state.spent = 500;
         // Nothing finished: no measure to go by.
         assert_eq!(state.left(100.0), None);

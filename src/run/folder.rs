@@ -32,13 +32,6 @@ fn io(path: &Path) -> impl FnOnce(std::io::Error) -> RunError + '_ {
     }
 }
 
-fn make(path: &Path) -> impl FnOnce(std::io::Error) -> RunError + '_ {
-    move |error| RunError::Make {
-        path: path.to_owned(),
-        error,
-    }
-}
-
 fn write(path: &Path) -> impl FnOnce(std::io::Error) -> RunError + '_ {
     move |error| RunError::Write {
         path: path.to_owned(),
@@ -63,8 +56,10 @@ impl RunFolder {
         if path.is_dir() && holds_other_than_a_beginning(path).map_err(io(path))? {
             return Err(RunError::NotARun(path.to_owned()));
         }
-        std::fs::create_dir_all(path).map_err(make(path))?;
-        let folder = Self::locked(path).map_err(RunError::before_work)?;
+        let folder = std::fs::create_dir_all(path)
+            .map_err(write(path))
+            .and_then(|()| Self::locked(path))
+            .map_err(RunError::before_work)?;
         // Another search may have come and gone before the lock was ours.
         if record.exists() {
             return Err(RunError::Exists(path.to_owned()));

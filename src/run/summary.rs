@@ -165,9 +165,10 @@ pub fn summarise(
     objectives: &[Objective],
     reference: &HypervolumeReference,
 ) -> Result<Summary, RunError> {
-    /// Designs gathered before the front is filtered anew.
-    const BATCH: usize = 20_000;
+    /// Designs gathered beyond the front's own number before it is filtered anew.
+    const BATCH: usize = 1_000;
     let mut front: Vec<DesignRecord> = Vec::new();
+    let mut kept = 0;
     let mut lines = Vec::new();
     let mut residuals = Vec::new();
     let mut evaluations = 0;
@@ -179,8 +180,9 @@ pub fn summarise(
         residuals.extend(record.designs.iter().map(|d| (d.residual, d.certified)));
         lines.push(line(&record));
         front.extend(record.designs);
-        if front.len() > BATCH {
+        if front.len() > 2 * kept + BATCH {
             front = filtered(objectives, front);
+            kept = front.len();
         }
     }
     let mut front = filtered(objectives, front);
