@@ -95,13 +95,17 @@ fn holds_files(folder: &Path) -> bool {
     entries.any(|e| !e.file_name().to_string_lossy().starts_with('.'))
 }
 
-/// Sends a signal; the exit code, which has to come soon.
-fn ended_by(signal: &str, child: &mut Child) -> Option<i32> {
+fn send(signal: &str, child: &Child) {
     let sent = Command::new("kill")
         .args(["-s", signal, &child.id().to_string()])
         .status()
         .unwrap();
     assert!(sent.success());
+}
+
+/// Sends a signal; the exit code, which has to come soon.
+fn ended_by(signal: &str, child: &mut Child) -> Option<i32> {
+    send(signal, child);
     let began = Instant::now();
     loop {
         if let Some(status) = child.try_wait().unwrap() {
@@ -157,6 +161,33 @@ fn law_a_signal_before_the_first_cell_ends_it_too() {
     }
     assert_eq!(ended_by("TERM", &mut child), Some(1));
     assert!(!holds_files(&out.join("cells")));
+}
+
+/// A terminal that is closed sends SIGHUP; under `nohup` a search goes on all the same.
+#[test]
+fn law_nohup_keeps_a_search_going() {
+    let temp = tempfile::tempdir().unwrap();
+    let out = temp.path().join("run");
+    let plain = program(Path::new(STUDY), &out, false);
+    let mut child = Command::new("nohup")
+        .arg(plain.get_program())
+        .args(plain.get_args())
+        .stdout(Stdio::null())
+        .stderr(Stdio::null())
+        .spawn()
+        .unwrap();
+    while !out.join("run.json").exists() {
+        std::thread::sleep(Duration::from_millis(5));
+    }
+    send("HUP", &child);
+    while !holds_files(&out.join("cells")) {
+        assert!(
+            child.try_wait().unwrap().is_none(),
+            "SIGHUP has ended the search"
+        );
+        std::thread::sleep(Duration::from_millis(5));
+    }
+    assert_eq!(ended_by("TERM", &mut child), Some(1));
 }
 
 /// Nobody need wait for a cell to see that it works.

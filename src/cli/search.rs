@@ -7,6 +7,8 @@ use crate::report::figures::{self, CellBest, FigureInput};
 use crate::run::RunError;
 use crate::run::join;
 use crate::run::session::{self, Finished, Job, Part};
+use signal_hook::consts::{SIGINT, SIGTERM};
+use signal_hook::iterator::Signals;
 use std::fmt::Write;
 use std::path::{Path, PathBuf};
 use std::str::FromStr;
@@ -77,14 +79,20 @@ pub fn run(arguments: &SearchArguments) -> Result<(), Failure> {
     close(&loaded, &out, finished?)
 }
 
-/// Raised by Ctrl-C, SIGTERM and SIGHUP. What does not look at it in time is ended: every file is whole at any moment.
+/// Raised by Ctrl-C and SIGTERM. What does not look at it in time is ended: every file is whole at any moment. SIGHUP is
+/// left as it comes, so that `nohup` works.
 fn stop_at_signals(out: &Path) -> Result<Arc<AtomicBool>, Failure> {
     /// A signal ends the program within a second.
     const PATIENCE: Duration = Duration::from_millis(700);
     let stop = Arc::new(AtomicBool::new(false));
     let raised = Arc::clone(&stop);
     let out = out.to_owned();
-    ctrlc::set_handler(move || {
+    let mut signals = Signals::new([SIGINT, SIGTERM])
+        .map_err(|e| Failure::Run(format!("cannot listen for signals: {e}")))?;
+    std::thread::spawn(move || {
+        if signals.forever().next().is_none() {
+            return;
+        }
         raised.store(true, Ordering::Relaxed);
         std::thread::sleep(PATIENCE);
         complain(&format!(
@@ -92,8 +100,7 @@ fn stop_at_signals(out: &Path) -> Result<Arc<AtomicBool>, Failure> {
             out.display()
         ));
         std::process::exit(1);
-    })
-    .map_err(|e| Failure::Run(format!("cannot listen for signals: {e}")))?;
+    });
     Ok(stop)
 }
 
