@@ -91,6 +91,7 @@ impl CellFront {
             let design = slice.design(&solved.point[..slice.axes.len()]);
             let evaluation = evaluate(context.setup, &design);
             self.evaluations += 1;
+            context.count(1);
             // The reserve kept to each limit covers the interpolation; what fails nonetheless is no answer.
             if evaluation.feasible {
                 points.push(FrontPoint {

@@ -17,6 +17,7 @@ use problem::{CoilSource, SliceProblem};
 use quadratic::Row;
 use space::Cell;
 use std::collections::BTreeMap;
+use std::sync::atomic::{AtomicU64, Ordering};
 
 /// How hard a cell is searched.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -53,6 +54,8 @@ pub struct Context<'a> {
     /// How hard each cell is searched.
     pub effort: Effort,
     tables: BTreeMap<u32, SpiralTable>,
+    /// Assessments of all cells, the unfinished too; for progress alone.
+    spent: AtomicU64,
 }
 
 /// Narrowest trace tabulated for the direct network, whose trace is a result, m.
@@ -85,7 +88,17 @@ impl<'a> Context<'a> {
             seed,
             effort: Effort::default(),
             tables,
+            spent: AtomicU64::new(0),
         }
+    }
+
+    /// Assessments so far, those of unfinished cells too.
+    pub fn spent(&self) -> u64 {
+        self.spent.load(Ordering::Relaxed)
+    }
+
+    fn count(&self, assessments: u64) {
+        self.spent.fetch_add(assessments, Ordering::Relaxed);
     }
 
     /// The inductor of a slice with these turns; `None` when no such spiral closes.

@@ -129,6 +129,11 @@ impl<'a> Tracer<'a> {
         targets.iter().map(|t| at(self, t)).collect()
     }
 
+    fn spend(&mut self, assessments: u64) {
+        self.evaluations += assessments;
+        self.context.count(assessments);
+    }
+
     /// Slices that may still reach a target.
     fn alive(&self, target: &Target) -> Vec<usize> {
         (0..self.slices.len())
@@ -289,7 +294,7 @@ impl<'a> Tracer<'a> {
         let result = result.ok()?;
         let spent = result.problem.counts.get("assessments").copied();
         let solver = result.solver;
-        self.evaluations += spent.unwrap_or(0);
+        self.spend(spent.unwrap_or(0));
         let feasible = solver.violation <= FEASIBLE
             && !matches!(solver.ended, Ended::NoStart | Ended::Infeasible);
         let assessment = solver.assessment.filter(|_| feasible)?;
@@ -348,7 +353,7 @@ impl<'a> Tracer<'a> {
     /// Points of a slice drawn by seed, each with its merits and what it breaks of the limits.
     fn draw(&mut self, cell: &Cell, slice: usize) -> Vec<Drawn> {
         let samples = self.context.effort.samples;
-        self.evaluations += samples as u64;
+        self.spend(samples as u64);
         let Some(problem) = self.problem(slice, NO_TARGET.goal(Objective::Efficiency)) else {
             return Vec::new();
         };

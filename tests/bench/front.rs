@@ -75,7 +75,11 @@ fn subjects() -> Vec<Subject> {
     let mut two_legs = subject("two-legs", "default.toml", &[0, 40, 80]);
     two_legs.study.stage.legs = 2;
     vec![
-        subject("default", "default.toml", &[0, 4, 8, 36, 40, 44, 72, 76, 80]),
+        subject(
+            "default",
+            "default.toml",
+            &[0, 4, 8, 36, 40, 44, 72, 76, 80],
+        ),
         subject("open130", "open130.toml", &[0, 40, 80]),
         subject("stacked", "stacked.toml", &[0, 40, 80]),
         two_legs,
@@ -141,7 +145,9 @@ impl<'a> Whole<'a> {
 
 fn evolve(whole: &Whole<'_>, third: bool, budget: u64) -> ParetoFront {
     let dimension = whole.problems[0].axes() + 1;
-    let problem = multi_func(vec![(0.0, 1.0); dimension], 3, |x: &[f64]| whole.objectives(x));
+    let problem = multi_func(vec![(0.0, 1.0); dimension], 3, |x: &[f64]| {
+        whole.objectives(x)
+    });
     assert_eq!(problem.dim(), dimension);
     let until = Termination::budget(budget as usize);
     if third {
@@ -165,7 +171,13 @@ fn population(front: &ParetoFront, area_scale: f64) -> Vec<Costs> {
         .solutions
         .iter()
         .filter(|s| s.objectives[0] < 0.0)
-        .map(|s| [s.objectives[0], s.objectives[1] / 10.0, s.objectives[2] * area_scale])
+        .map(|s| {
+            [
+                s.objectives[0],
+                s.objectives[1] / 10.0,
+                s.objectives[2] * area_scale,
+            ]
+        })
         .collect()
 }
 
@@ -187,7 +199,10 @@ struct Place<'a> {
 fn searched(place: &Place<'_>) -> (Vec<Costs>, u64) {
     let never = AtomicBool::new(false);
     let front = search_cell(&place.context, &place.cell, &never).expect("not stopped");
-    let costs = front.points.iter().map(|p| point_costs(place.context.objectives, p));
+    let costs = front
+        .points
+        .iter()
+        .map(|p| point_costs(place.context.objectives, p));
     (costs.collect(), front.evaluations)
 }
 
@@ -198,7 +213,10 @@ fn reference_path(name: &str) -> PathBuf {
 }
 
 fn thinned(points: &[Costs], spacing: f64) -> Vec<Costs> {
-    spread(points, spacing).into_iter().map(|i| points[i]).collect()
+    spread(points, spacing)
+        .into_iter()
+        .map(|i| points[i])
+        .collect()
 }
 
 /// Makes a cell's reference; returns what there is to say of it.
@@ -224,7 +242,10 @@ fn make_reference(place: &mut Place<'_>) -> String {
         union.extend(points);
     }
     (place.context.seed, place.context.effort) = (seed, effort);
-    let full: Vec<Costs> = non_dominated(&union).into_iter().map(|i| union[i]).collect();
+    let full: Vec<Costs> = non_dominated(&union)
+        .into_iter()
+        .map(|i| union[i])
+        .collect();
     let kept = thinned(&full, REFERENCE_SPACING);
     let mut text = format!(
         "# cargo bench --bench front -- reference: union of NSGA-II, NSGA-III, longer searches and the search, {spent} \
@@ -252,13 +273,22 @@ fn read_reference(name: &str) -> (Vec<Costs>, f64) {
     let text = std::fs::read_to_string(&path).unwrap_or_else(|e| panic!("{}: {e}", path.display()));
     let all = text
         .lines()
-        .find_map(|l| l.strip_prefix("# hypervolume")?.rsplit(' ').next()?.parse().ok())
+        .find_map(|l| {
+            l.strip_prefix("# hypervolume")?
+                .rsplit(' ')
+                .next()?
+                .parse()
+                .ok()
+        })
         .expect("hypervolume");
-    let points = text.lines().filter(|l| !l.starts_with(['#', 'e'])).map(|line| {
-        let mut fields = line.split(',').map(|f| f.parse::<f64>().expect("number"));
-        let mut next = || fields.next().expect("field");
-        [-next(), -next(), next()]
-    });
+    let points = text
+        .lines()
+        .filter(|l| !l.starts_with(['#', 'e']))
+        .map(|line| {
+            let mut fields = line.split(',').map(|f| f.parse::<f64>().expect("number"));
+            let mut next = || fields.next().expect("field");
+            [-next(), -next(), next()]
+        });
     (points.collect(), all)
 }
 
