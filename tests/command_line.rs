@@ -26,7 +26,7 @@ fn law_every_study_of_ours_checks_and_its_design_evaluates() {
     for study in studies {
         widefront().arg("check").arg(&study).assert().success();
         let output = widefront()
-            .args(["evaluate", "--json"])
+            .args(["evaluate", "--variant", "1", "--json"])
             .arg(&study)
             .assert()
             .success();

@@ -135,8 +135,10 @@ fn study(v: &Value) -> Study {
         search: SearchSettings {
             objectives: vec![Objective::Efficiency],
             seed: 1,
+            fronts_by: Vec::new(),
         },
         design: None,
+        sweep: widefront::study::Sweep::default(),
     }
 }
 

@@ -1,7 +1,8 @@
 //! `widefront check`: what a study resolves to.
 
 use super::{Failure, Loaded, load, print};
-use crate::quantity::format as engineering;
+use crate::quantity::{format as engineering, format_in};
+use crate::run::variant::VariantLabel;
 use crate::search::space;
 use crate::stage::driver::{fastest_taper, inverter_capacitances};
 use crate::study::{Range, Space};
@@ -15,7 +16,8 @@ pub fn run(path: &Path) -> Result<(), Failure> {
 }
 
 fn described(loaded: &Loaded) -> String {
-    let (study, setup) = (&loaded.file.study, &loaded.setup);
+    let first = &loaded.variants[0];
+    let (study, setup) = (&loaded.file.study, &first.setup);
     let mut out = String::new();
     let mut line = |label: &str, value: String| {
         // Writing to a String cannot fail.
@@ -24,7 +26,7 @@ fn described(loaded: &Loaded) -> String {
     line("study", study.title.clone());
     line(
         "technology",
-        format!("{} ({})", loaded.technology.name, loaded.technology.source),
+        format!("{} ({})", first.technology.name, first.technology.source),
     );
     line("carrier", engineering(study.frequency_hz, "Hz"));
     line(
@@ -55,14 +57,38 @@ fn described(loaded: &Loaded) -> String {
         ),
     );
     match &study.space {
-        Some(s) => space_lines(s, &mut line),
+        Some(s) => space_lines(s, loaded.variants.len(), &mut line),
         None => line(
             "design space",
             "none: this study can be evaluated, not searched".into(),
         ),
     }
+    if loaded.variants.len() > 1 {
+        line("above this, figures of", "variant 1".into());
+        for (number, variant) in loaded.variants.iter().take(MOST_LISTED).enumerate() {
+            let label = VariantLabel::new(variant);
+            line(
+                &format!("variant {}", number + 1),
+                format!(
+                    "{}, {}, stack {}, legs {}, {}, {}",
+                    label.technology,
+                    label.device,
+                    label.stack,
+                    label.legs,
+                    engineering(label.frequency_hz, "Hz"),
+                    format_in(label.temperature_k, "degC"),
+                ),
+            );
+        }
+        if let Some(more) = loaded.variants.len().checked_sub(MOST_LISTED + 1) {
+            line("", format!("and {} more", more + 1));
+        }
+    }
     out
 }
+
+/// Variants printed before the rest is only counted.
+const MOST_LISTED: usize = 24;
 
 fn device_line(device: &WarmTransistor, swing: f64, supply: f64) -> String {
     let micrometre = 1e-6;
@@ -77,12 +103,21 @@ fn device_line(device: &WarmTransistor, swing: f64, supply: f64) -> String {
 }
 
 /// Assessments a slice takes when it is traced in full, measured on the default study.
-const ASSESSMENTS_A_SLICE: usize = 700;
+const ASSESSMENTS_A_SLICE: usize = 500;
 
-fn space_lines(s: &Space, line: &mut impl FnMut(&str, String)) {
-    let cells = space::cells(s).len();
+fn space_lines(s: &Space, variants: usize, line: &mut impl FnMut(&str, String)) {
+    let cells = space::cells(s).len() * variants;
     let slices = space::slices_a_cell(s);
-    line("cells", cells.to_string());
+    line(
+        "cells",
+        match variants {
+            1 => cells.to_string(),
+            _ => format!(
+                "{cells}: {} of each of {variants} variants",
+                cells / variants
+            ),
+        },
+    );
     line(
         "combinations a cell",
         format!("{slices} of whole numbers and grid values"),

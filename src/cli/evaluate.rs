@@ -8,15 +8,16 @@ use std::fmt::Write;
 use std::path::Path;
 
 /// Evaluates the study's design with its values changed by `set`.
-pub fn run(path: &Path, set: &[String], json: bool) -> Result<(), Failure> {
+pub fn run(path: &Path, set: &[String], variant: Option<usize>, json: bool) -> Result<(), Failure> {
     let loaded = load(path, set)?;
+    let variant = loaded.variant(variant)?;
     let design = loaded.file.study.design.as_ref().ok_or_else(|| {
         Failure::Input(format!(
             "{}: [design]: read nothing; allowed: one sizing to evaluate\n  help: add a table [design] to the study",
             path.display()
         ))
     })?;
-    let evaluation = evaluate(&loaded.setup, design);
+    let evaluation = evaluate(&variant.setup, design);
     if json {
         let text = serde_json::to_string_pretty(&evaluation)
             .map_err(|e| Failure::Run(format!("writing JSON: {e}")))?;

@@ -10,9 +10,11 @@ mod search;
 mod sheet;
 
 use crate::evaluate::Setup;
+use crate::run::variant::Variant;
 use crate::study::{self, Faults, StudyFile};
 use crate::technology::{self, Technology};
 use clap::{Parser, Subcommand};
+use std::collections::{BTreeMap, BTreeSet};
 use std::io::Write;
 use std::path::{Path, PathBuf};
 use std::process::ExitCode;
@@ -47,6 +49,9 @@ enum Command {
         /// Change a value of [design], as the file would hold it: supply=1.0V. May be repeated.
         #[arg(long, value_name = "KEY=VALUE")]
         set: Vec<String>,
+        /// Which variant of a study that lists several values, as `check` numbers them.
+        #[arg(long, value_name = "N")]
+        variant: Option<usize>,
         /// Print one JSON object and nothing else.
         #[arg(long)]
         json: bool,
@@ -92,7 +97,12 @@ pub fn run() -> ExitCode {
             _ => check::run(&study),
         },
         Command::Fit(arguments) => fit::run(&arguments),
-        Command::Evaluate { study, set, json } => evaluate::run(&study, &set, json),
+        Command::Evaluate {
+            study,
+            set,
+            variant,
+            json,
+        } => evaluate::run(&study, &set, variant, json),
         Command::Search(arguments) => search::run(&arguments),
         Command::Join(arguments) => search::join(&arguments),
         Command::Pick(arguments) => pick::run(&arguments),
@@ -137,28 +147,73 @@ pub(crate) fn print(text: &str) -> Result<(), Failure> {
     }
 }
 
-/// A study with its technology.
+/// A study with its variants, at least one.
 pub(crate) struct Loaded {
     pub file: StudyFile,
-    pub technology: Technology,
-    pub setup: Setup,
+    pub variants: Vec<Variant>,
 }
 
-/// Reads a study and its technology and holds them to each other; warnings go to standard error.
+/// Reads a study and its technologies and holds them to each other; warnings go to standard error, each once.
 pub(crate) fn load(path: &Path, set: &[String]) -> Result<Loaded, Failure> {
     let mut file = study::read(path)?;
     for assignment in set {
         study::set_design(&mut file, assignment)?;
     }
-    let technology = technology::read_for(&file)?;
-    for warning in file.warnings.iter().chain(&technology.warnings) {
-        tell(&warning.to_string());
+    let mut told = BTreeSet::new();
+    let mut warn = |warning: String| {
+        if told.insert(warning.clone()) {
+            tell(&warning);
+        }
+    };
+    for warning in &file.warnings {
+        warn(warning.to_string());
     }
-    let technology = technology.technology;
-    let setup = Setup::new(&file.study, &technology).map_err(|e| Failure::Input(e.to_string()))?;
-    Ok(Loaded {
-        file,
-        technology,
-        setup,
-    })
+    let mut technologies: BTreeMap<PathBuf, Technology> = BTreeMap::new();
+    let mut variants = Vec::new();
+    for variant in file.variants() {
+        let technology = match technologies.get(&variant.study.technology) {
+            Some(technology) => {
+                for warning in technology::fit(&variant, technology)? {
+                    warn(warning.to_string());
+                }
+                technology.clone()
+            }
+            None => {
+                let read = technology::read_for(&variant)?;
+                for warning in &read.warnings {
+                    warn(warning.to_string());
+                }
+                technologies.insert(variant.study.technology.clone(), read.technology.clone());
+                read.technology
+            }
+        };
+        let setup =
+            Setup::new(&variant.study, &technology).map_err(|e| Failure::Input(e.to_string()))?;
+        variants.push(Variant {
+            study: variant.study,
+            technology,
+            setup,
+        });
+    }
+    Ok(Loaded { file, variants })
+}
+
+impl Loaded {
+    /// The variant of a number from 1; the only one when none is asked for.
+    pub(crate) fn variant(&self, number: Option<usize>) -> Result<&Variant, Failure> {
+        let count = self.variants.len();
+        let asked = match number {
+            None if count > 1 => "no variant".to_owned(),
+            None => "1".to_owned(),
+            Some(number) => number.to_string(),
+        };
+        let place = number.unwrap_or(if count > 1 { 0 } else { 1 });
+        let found = place.checked_sub(1).and_then(|i| self.variants.get(i));
+        found.ok_or_else(|| {
+            Failure::Input(format!(
+                "--variant: read {asked}; allowed: 1 to {count}, as this study lists several values\n  help: \
+                 `widefront check` numbers them"
+            ))
+        })
+    }
 }

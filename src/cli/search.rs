@@ -121,8 +121,7 @@ fn job<'a>(
 ) -> Job<'a> {
     Job {
         study: &loaded.file.study,
-        technology: &loaded.technology,
-        setup: &loaded.setup,
+        variants: &loaded.variants,
         out,
         resume,
         part,

@@ -4,11 +4,9 @@ use super::{Failure, print};
 use crate::evaluate::Setup;
 use crate::run::folder::{RunFolder, read_cell, read_front, read_run};
 use crate::run::records::DesignRecord;
+use crate::run::variant::variant_of_cell;
 use crate::sheet::{Sheet, SheetError, csv, drawing, markdown, sheet};
-use crate::study::{Study, nearest};
-use crate::technology::Technology;
-use serde::de::DeserializeOwned;
-use serde_json::Value;
+use crate::study::nearest;
 use std::path::{Path, PathBuf};
 
 #[derive(Debug, clap::Args)]
@@ -30,21 +28,13 @@ impl From<SheetError> for Failure {
 
 /// Makes and writes the sheet.
 pub fn run(arguments: &SheetArguments) -> Result<(), Failure> {
-    let run = read_run(&arguments.run)?;
-    let study: Study = part(&arguments.run, &run, "study")?;
-    let technology: Technology = part(&arguments.run, &run, "technology")?;
-    let setup = Setup::new(&study, &technology).map_err(|e| Failure::Run(e.to_string()))?;
+    read_run(&arguments.run)?;
     let record = design(&arguments.run, &arguments.design)?;
+    let (study, technology) = variant_of_cell(&arguments.run, record.cell)?;
+    let setup = Setup::new(&study, &technology).map_err(|e| Failure::Run(e.to_string()))?;
     let sheet = sheet(&study, &technology, &setup, &record)?;
     write(&arguments.run, &sheet)?;
     print(&summary(&arguments.run, &sheet))
-}
-
-fn part<T: DeserializeOwned>(path: &Path, run: &Value, key: &str) -> Result<T, Failure> {
-    serde_json::from_value(run[key].clone()).map_err(|e| {
-        let name = path.join("run.json");
-        Failure::Run(format!("{}: its {key} is damaged: {e}", name.display()))
-    })
 }
 
 /// A design of the overall front, or of the front of the cell that its id begins with.

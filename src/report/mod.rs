@@ -7,7 +7,7 @@ use crate::run::RunError;
 use crate::run::folder::{RunFolder, read_front, read_optional, read_run};
 use crate::run::records::{PeriodRecord, WidthSweep};
 use crate::run::summary::read_cells;
-use figures::{CellBest, FigureError, FigureInput};
+use figures::{FigureError, FigureInput};
 use page::PageInput;
 use std::path::PathBuf;
 use thiserror::Error;
@@ -35,7 +35,7 @@ pub fn write(folder: &RunFolder) -> Result<PathBuf, ReportError> {
     let sweep: Option<WidthSweep> = read_optional(path, "figures/width_sweep.json")?;
     let period: Option<PeriodRecord> = read_optional(path, "figures/period.json")?;
     let periods: Option<Vec<PeriodRecord>> = read_optional(path, "waveforms.json")?;
-    let best: Vec<CellBest> = cells.iter().map(CellBest::from).collect();
+    let best = figures::best_cells(&cells);
     let input = FigureInput {
         title: run["study"]["title"].as_str().unwrap_or_default(),
         designs: &front.designs,

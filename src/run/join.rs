@@ -4,7 +4,7 @@ use super::RunError;
 use super::folder::{RunFolder, cell_name, read_cell, read_run};
 use super::same::same_run;
 use super::session::{Finished, Job, Observer, Part, new_record, run};
-use crate::search::space;
+use super::variant::run_cells;
 use serde_json::Value;
 use std::path::PathBuf;
 use std::sync::atomic::AtomicBool;
@@ -30,7 +30,7 @@ pub fn join(
         there["part"] = Value::Null;
         same_run(part, &there, &wanted)?;
     }
-    let cells = space::cells(space);
+    let cells = run_cells(space, job.variants.len());
     let mut missing = Vec::new();
     let mut records = Vec::with_capacity(cells.len());
     for cell in &cells {

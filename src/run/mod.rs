@@ -7,6 +7,7 @@ mod same;
 pub mod session;
 pub mod summary;
 mod table;
+pub mod variant;
 
 use serde::Serialize;
 use std::path::PathBuf;

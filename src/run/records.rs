@@ -1,5 +1,6 @@
 //! What a run leaves behind, as written to its folder. Figures, sheets and the report read these, never the physics.
 
+use super::variant::VariantLabel;
 use crate::evaluate::Evaluation;
 use crate::steady::waveform::Waveform;
 use crate::study::{Objective, Study};
@@ -20,6 +21,9 @@ pub struct DesignRecord {
     pub residual: f64,
     /// Whether the residual is small enough to call the point optimal.
     pub certified: bool,
+    /// Its variant, where the study lists several.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub variant: Option<VariantLabel>,
     /// The evaluation.
     #[serde(flatten)]
     pub evaluation: Evaluation,
@@ -34,6 +38,9 @@ pub struct CellRecord {
     pub loaded_q: Option<f64>,
     /// V_DD, V; none where it is free.
     pub supply_v: Option<f64>,
+    /// Its variant, where the study lists several.
+    #[serde(default, skip_serializing_if = "Option::is_none")]
+    pub variant: Option<VariantLabel>,
     /// Assessments spent.
     pub evaluations: u64,
     /// Hypervolume of its front against the run's reference.
@@ -81,8 +88,11 @@ pub struct RunRecord {
     pub version: String,
     /// The study as resolved.
     pub study: Study,
-    /// The technology as resolved.
+    /// The technology as resolved; the first where several are listed.
     pub technology: Technology,
+    /// All that are listed, in that order; empty where one is given.
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    pub technologies: Vec<Technology>,
     /// blake3 of the study as resolved.
     pub study_hash: String,
     /// blake3 of the technology as resolved.

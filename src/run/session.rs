@@ -1,17 +1,21 @@
 //! One sitting of a search: what is missing is searched on all threads, each finished cell on disk at once.
 
 use super::folder::{RunFolder, read_cell, read_run};
-use super::records::{CellRecord, DesignRecord, PeriodRecord, RunRecord, SCHEMA, WidthSweep};
+use super::records::{
+    CellRecord, DesignRecord, HypervolumeReference, PeriodRecord, RunRecord, SCHEMA, WidthSweep,
+};
 use super::same::same_run;
 use super::summary::{Standing, Summary, front_hypervolume, hypervolume_reference, summarise};
+use super::variant::{RunCell, Variant, VariantLabel, run_cells};
 use super::{RunError, digest};
-use crate::evaluate::{Setup, evaluate, loop_waveform};
+use crate::evaluate::{evaluate, loop_waveform};
 use crate::search::Context;
 use crate::search::cell::{CERTIFIED_RESIDUAL, CellFront, search_cell};
-use crate::search::space::{self, Cell};
+use crate::search::space;
 use crate::study::{Design, Space, Study};
 use crate::technology::Technology;
 use rayon::prelude::*;
+use serde_json::Value;
 use std::collections::BTreeSet;
 use std::path::{Path, PathBuf};
 use std::str::FromStr;
@@ -66,12 +70,10 @@ impl std::fmt::Display for Part {
 /// What is asked of a sitting.
 #[derive(Debug)]
 pub struct Job<'a> {
-    /// The study.
+    /// The study, lists and all.
     pub study: &'a Study,
-    /// Its technology.
-    pub technology: &'a Technology,
-    /// Both together.
-    pub setup: &'a Setup,
+    /// Its variants, in their order, at least one.
+    pub variants: &'a [Variant],
     /// The run folder.
     pub out: &'a Path,
     /// Go on with a run that is there.
@@ -136,7 +138,7 @@ pub fn run(
         begun.map_err(RunError::before_work)?;
     }
 
-    let cells: Vec<Cell> = space::cells(space)
+    let cells: Vec<RunCell> = run_cells(space, job.variants.len())
         .into_iter()
         .filter(|c| job.part.is_none_or(|p| p == Part::owner(c.index, p.count)))
         .collect();
@@ -173,7 +175,7 @@ pub fn run(
     let summary = summarise(
         &folder,
         cells.iter().map(|c| c.index),
-        &record.objectives,
+        &job.study.search,
         &record.hypervolume_reference,
     )?;
     close(&mut record, &summary);
@@ -205,15 +207,40 @@ pub(super) fn new_record(job: &Job<'_>, space: &Space) -> Result<RunRecord, RunE
     let mut study = serde_json::to_value(job.study).map_err(damaged)?;
     if let Some(map) = study.as_object_mut() {
         map.shift_remove("technology");
+        if let Some(Value::Object(sweep)) = map.get_mut("sweep") {
+            sweep.shift_remove("technologies");
+        }
     }
+    // Technology is the outermost list.
+    let listed = &job.study.sweep.technologies;
+    let a_technology = job.variants.len() / listed.len().max(1);
+    let technologies: Vec<Technology> = job
+        .variants
+        .iter()
+        .step_by(a_technology.max(1))
+        .take(listed.len())
+        .map(|v| v.technology.clone())
+        .collect();
+    let first = job.variants.first().ok_or(RunError::NoSpace)?;
+    let technology_hash = if technologies.is_empty() {
+        digest(&first.technology)
+    } else {
+        digest(&technologies)
+    };
+    let largest = job
+        .variants
+        .iter()
+        .map(|v| hypervolume_reference(&v.study, &v.setup, space).area_m2)
+        .fold(0.0, f64::max);
     let cores = std::thread::available_parallelism().map_or(1, usize::from);
     Ok(RunRecord {
         schema: SCHEMA,
         version: env!("CARGO_PKG_VERSION").into(),
         study: job.study.clone(),
-        technology: job.technology.clone(),
+        technology: first.technology.clone(),
+        technologies,
         study_hash: digest(&study).map_err(damaged)?,
-        technology_hash: digest(job.technology).map_err(damaged)?,
+        technology_hash: technology_hash.map_err(damaged)?,
         seed: job.study.search.seed,
         objectives: job.study.search.objectives.clone(),
         host_cores: cores,
@@ -221,12 +248,12 @@ pub(super) fn new_record(job: &Job<'_>, space: &Space) -> Result<RunRecord, RunE
         started_unix_s: now(),
         ended_unix_s: None,
         part: job.part.map(|p| p.to_string()),
-        cells: space::cells(space).len(),
+        cells: space::cells(space).len() * job.variants.len(),
         cells_finished: 0,
         evaluations: 0,
         front_size: 0,
         hypervolume: 0.0,
-        hypervolume_reference: hypervolume_reference(job.study, job.setup, space),
+        hypervolume_reference: HypervolumeReference { area_m2: largest },
         residuals: None,
         ended_because: "still running".into(),
     })
@@ -241,7 +268,7 @@ fn search_missing(
     space: &Space,
     record: &RunRecord,
     folder: &RunFolder,
-    missing: &[Cell],
+    missing: &[RunCell],
     stop: &AtomicBool,
     observer: &impl Observer,
 ) -> Result<usize, RunError> {
@@ -258,14 +285,14 @@ fn search_missing(
     let failed: Mutex<Option<RunError>> = Mutex::new(None);
     let finished = AtomicUsize::new(0);
     // One cell at a time a thread: cells differ in cost, and a kill should lose as little as it can.
-    let search = |context: &Context<'_>, cell: &Cell| {
+    let search = |context: &Context<'_>, cell: &RunCell| {
         if stop.load(Ordering::Relaxed) {
             return;
         }
-        let Some(front) = search_cell(context, cell, stop) else {
+        let Some(front) = search_cell(context, &cell.cell, stop) else {
             return;
         };
-        let cell_record = cell_record(record, front);
+        let cell_record = cell_record(record, job.variants, cell, front);
         match folder.write_cell(&cell_record) {
             Ok(()) => {
                 finished.fetch_add(1, Ordering::Relaxed);
@@ -279,22 +306,34 @@ fn search_missing(
             }
         }
     };
-    let context = OnceLock::new();
+    // A variant's spirals are tabulated when its first cell is at hand.
+    let contexts: Vec<OnceLock<Context<'_>>> =
+        job.variants.iter().map(|_| OnceLock::new()).collect();
     let (working, ended) = mpsc::channel::<()>();
     std::thread::scope(|scope| {
-        let told = &context;
+        let told = &contexts;
         scope.spawn(move || {
             while ended.recv_timeout(TELL_EVERY) == Err(mpsc::RecvTimeoutError::Timeout) {
-                observer.spent(told.get().map_or(0, Context::spent));
+                let spent = told.iter().filter_map(OnceLock::get).map(Context::spent);
+                observer.spent(spent.sum());
             }
         });
-        pool.install(|| {
-            let context = context
-                .get_or_init(|| Context::new(job.setup, space, &record.objectives, record.seed));
-            missing
-                .par_iter()
-                .with_max_len(1)
-                .for_each(|cell| search(context, cell));
+        // Threads of their own: one of the pool that waits for spirals would take up another cell, which may want
+        // the very spirals it waits for.
+        let next = AtomicUsize::new(0);
+        let work = || {
+            while let Some(cell) = missing.get(next.fetch_add(1, Ordering::Relaxed)) {
+                let setup = &job.variants[cell.variant].setup;
+                let context = contexts[cell.variant].get_or_init(|| {
+                    pool.install(|| Context::new(setup, space, &record.objectives, record.seed))
+                });
+                search(context, cell);
+            }
+        };
+        std::thread::scope(|workers| {
+            for _ in 0..record.threads {
+                workers.spawn(work);
+            }
         });
         drop(working);
     });
@@ -304,24 +343,32 @@ fn search_missing(
     }
 }
 
-fn cell_record(run: &RunRecord, front: CellFront) -> CellRecord {
+fn cell_record(
+    run: &RunRecord,
+    variants: &[Variant],
+    at: &RunCell,
+    front: CellFront,
+) -> CellRecord {
     let cell = front.cell;
+    let variant = (variants.len() > 1).then(|| VariantLabel::new(&variants[at.variant]));
     let designs: Vec<DesignRecord> = front
         .points
         .into_iter()
         .enumerate()
         .map(|(place, point)| DesignRecord {
-            id: format!("{:05}-{place:03}", cell.index),
-            cell: cell.index,
+            id: format!("{:05}-{place:03}", at.index),
+            cell: at.index,
             residual: point.residual,
             certified: point.residual <= CERTIFIED_RESIDUAL,
+            variant: variant.clone(),
             evaluation: point.evaluation,
         })
         .collect();
     CellRecord {
-        cell: cell.index,
+        cell: at.index,
         loaded_q: cell.loaded_q,
         supply_v: cell.supply_v,
+        variant,
         evaluations: front.evaluations,
         hypervolume: front_hypervolume(&run.objectives, &run.hypervolume_reference, &designs),
         designs,
@@ -349,6 +396,8 @@ fn illustrations(job: &Job<'_>, folder: &RunFolder, summary: &Summary) -> Result
     let Some(best) = summary.front.first() else {
         return Ok(());
     };
+    let a_variant = (job.study.space.as_ref()).map_or(1, |s| space::cells(s).len());
+    let setup_of = |record: &DesignRecord| &job.variants[record.cell / a_variant].setup;
     let design = &best.evaluation.design;
     let widths: Vec<f64> = (0..WIDTHS)
         .map(|i| design.nmos_width_m * 5f64.powf(2.0 * i as f64 / (WIDTHS - 1) as f64 - 1.0))
@@ -360,7 +409,7 @@ fn illustrations(job: &Job<'_>, folder: &RunFolder, summary: &Summary) -> Result
                 nmos_width_m,
                 ..design.clone()
             };
-            evaluate(job.setup, &varied)
+            evaluate(setup_of(best), &varied)
         })
         .collect();
     let sweep = WidthSweep {
@@ -371,10 +420,11 @@ fn illustrations(job: &Job<'_>, folder: &RunFolder, summary: &Summary) -> Result
     folder.write_json("figures/width_sweep.json", &sweep)?;
     let period = |record: &DesignRecord, samples: usize| {
         let design = &record.evaluation.design;
-        let waveform = loop_waveform(job.setup, design, samples)?;
+        let setup = setup_of(record);
+        let waveform = loop_waveform(setup, design, samples)?;
         Some(PeriodRecord {
             id: record.id.clone(),
-            frequency_hz: job.setup.frequency_hz,
+            frequency_hz: setup.frequency_hz,
             supply_v: design.supply_v,
             dead_time: design.dead_time,
             waveform,

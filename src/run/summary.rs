@@ -10,9 +10,10 @@ use crate::evaluate::Setup;
 use crate::numerics::hypervolume::hypervolume;
 use crate::search::front::{Costs, costs, non_dominated};
 use crate::search::space;
-use crate::study::{Objective, Space, Study};
+use crate::study::{Objective, SearchSettings, Space, Study};
 use crate::technology::Inductor;
 use serde::{Deserialize, Serialize};
+use std::collections::BTreeMap;
 use std::path::Path;
 
 /// Square millimetres in a square metre: the unit of area in a hypervolume.
@@ -35,6 +36,12 @@ pub struct CellLine {
     front_size: usize,
     hypervolume: f64,
     evaluations: u64,
+    technology: Option<String>,
+    device: Option<String>,
+    stack: Option<u32>,
+    legs: Option<u32>,
+    frequency_hz: Option<f64>,
+    temperature_k: Option<f64>,
 }
 
 /// Reads `cells.csv`.
@@ -182,9 +189,10 @@ pub fn hypervolume_reference(study: &Study, setup: &Setup, space: &Space) -> Hyp
 pub fn summarise(
     folder: &RunFolder,
     cells: impl Iterator<Item = usize>,
-    objectives: &[Objective],
+    search: &SearchSettings,
     reference: &HypervolumeReference,
 ) -> Result<Summary, RunError> {
+    let objectives = search.objectives.as_slice();
     /// Designs gathered beyond the front's own number before it is filtered anew.
     const BATCH: usize = 1_000;
     let mut front: Vec<DesignRecord> = Vec::new();
@@ -201,11 +209,11 @@ pub fn summarise(
         lines.push(line(&record));
         front.extend(record.designs);
         if front.len() > 2 * kept + BATCH {
-            front = filtered(objectives, front);
+            front = filtered(search, front);
             kept = front.len();
         }
     }
-    let mut front = filtered(objectives, front);
+    let mut front = filtered(search, front);
     front.sort_by(|a, b| {
         let (x, y) = (record_costs(objectives, a), record_costs(objectives, b));
         (x[0].total_cmp(&y[0]))
@@ -229,14 +237,21 @@ pub fn summarise(
     })
 }
 
-fn filtered(objectives: &[Objective], designs: Vec<DesignRecord>) -> Vec<DesignRecord> {
-    let all: Vec<Costs> = designs
-        .iter()
-        .map(|d| record_costs(objectives, d))
-        .collect();
+/// The non-dominated designs of each group.
+fn filtered(search: &SearchSettings, designs: Vec<DesignRecord>) -> Vec<DesignRecord> {
+    let mut groups: BTreeMap<Vec<String>, Vec<usize>> = BTreeMap::new();
+    for (index, design) in designs.iter().enumerate() {
+        let label = design.variant.as_ref();
+        let group = label.map_or(Vec::new(), |v| v.group(&search.fronts_by));
+        groups.entry(group).or_default().push(index);
+    }
     let mut keep = vec![false; designs.len()];
-    for index in non_dominated(&all) {
-        keep[index] = true;
+    for members in groups.values() {
+        let costs = |&i: &usize| record_costs(&search.objectives, &designs[i]);
+        let all: Vec<Costs> = members.iter().map(costs).collect();
+        for place in non_dominated(&all) {
+            keep[members[place]] = true;
+        }
     }
     let mut marks = keep.into_iter();
     designs
@@ -263,6 +278,12 @@ fn line(record: &CellRecord) -> CellLine {
         front_size: record.designs.len(),
         hypervolume: record.hypervolume,
         evaluations: record.evaluations,
+        technology: record.variant.as_ref().map(|v| v.technology.clone()),
+        device: record.variant.as_ref().map(|v| v.device.clone()),
+        stack: record.variant.as_ref().map(|v| v.stack),
+        legs: record.variant.as_ref().map(|v| v.legs),
+        frequency_hz: record.variant.as_ref().map(|v| v.frequency_hz),
+        temperature_k: record.variant.as_ref().map(|v| v.temperature_k),
     }
 }
 

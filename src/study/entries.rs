@@ -96,6 +96,57 @@ impl<'t> Section<'_, 't> {
         Bounds { at_least, at_most }
     }
 
+    /// One value or a list of different ones; at least one, a placeholder after a fault.
+    pub fn figures(&self, key: &str, figure: Figure) -> Vec<f64> {
+        if self.list(key).is_none() {
+            return vec![self.required(key, figure)];
+        }
+        let read = |value: &Spanned<DeValue<'t>>| {
+            let read = figure.read(value.get_ref(), &self.read(value));
+            read.map_err(|kind| self.fault(key, kind)).ok()
+        };
+        self.different(key, read, figure.placeholder())
+    }
+
+    /// One line of text or a list of different ones.
+    pub fn texts(&self, key: &str) -> Vec<String> {
+        if self.list(key).is_none() {
+            return vec![self.text(key)];
+        }
+        self.different(key, |value| self.line_of(key, value), String::new())
+    }
+
+    fn list(&self, key: &str) -> Option<&toml::de::DeArray<'t>> {
+        self.table?.get(key)?.get_ref().as_array()
+    }
+
+    fn different<T: PartialEq>(
+        &self,
+        key: &str,
+        read: impl Fn(&Spanned<DeValue<'t>>) -> Option<T>,
+        placeholder: T,
+    ) -> Vec<T> {
+        self.entry(key);
+        let mut values = Vec::new();
+        for item in self.list(key).into_iter().flat_map(|list| list.iter()) {
+            let Some(value) = read(item) else { continue };
+            if values.contains(&value) {
+                let read = self.read(item);
+                self.fault(key, FaultKind::Repeated { read });
+            }
+            values.push(value);
+        }
+        if self.list(key).is_some_and(|list| list.is_empty()) {
+            let read = "an empty list".to_owned();
+            let allowed = "one value or a list of them".to_owned();
+            self.fault(key, FaultKind::WrongType { read, allowed });
+        }
+        if values.is_empty() {
+            values.push(placeholder);
+        }
+        values
+    }
+
     /// A line of text that is not empty.
     pub fn text(&self, key: &str) -> String {
         let allowed = "a line of text".to_owned();
@@ -103,14 +154,19 @@ impl<'t> Section<'_, 't> {
             self.missing(key, allowed, Some("\"…\"".to_owned()));
             return String::new();
         };
+        self.line_of(key, value).unwrap_or_default()
+    }
+
+    fn line_of(&self, key: &str, value: &Spanned<DeValue<'t>>) -> Option<String> {
         match value.get_ref().as_str() {
             Some(text) if !text.trim().is_empty() && !text.contains(char::is_control) => {
-                text.to_owned()
+                Some(text.to_owned())
             }
             _ => {
                 let read = self.read(value);
+                let allowed = "a line of text".to_owned();
                 self.fault(key, FaultKind::WrongType { read, allowed });
-                String::new()
+                None
             }
         }
     }

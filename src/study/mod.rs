@@ -9,6 +9,7 @@ pub(crate) mod raw;
 mod read;
 mod resolved;
 mod spelling;
+mod sweep;
 mod variables;
 
 pub use assign::{DESIGN_KEYS, set_design};
@@ -17,3 +18,4 @@ pub use lines::Lines;
 pub use read::{SCHEMA, StudyFile, read, read_str};
 pub use resolved::*;
 pub use spelling::nearest;
+pub use sweep::{LISTED, Listed, Sweep};

@@ -1,10 +1,11 @@
 //! From the text of a study to a [`Study`].
 
-use super::diagnostics::{Faults, Warning, WarningKind};
+use super::diagnostics::{FaultKind, Faults, Warning, WarningKind};
 use super::figure::{above, number, quantity, whole, within};
 use super::lines::Lines;
 use super::raw::{Section, load, walk};
 use super::resolved::*;
+use super::sweep::{LISTED, Sweep};
 use super::variables::*;
 use crate::quantity::Dimension;
 use std::path::Path;
@@ -13,6 +14,8 @@ use std::path::Path;
 pub const SCHEMA: i64 = 1;
 /// Junction temperature when the study gives none, K (27 degC).
 const DEFAULT_TEMPERATURE_K: f64 = 300.15;
+/// Most variants of a study: more is a slip of the pen, and each takes memory.
+const MOST_VARIANTS: usize = 10_000;
 /// Seed when the study gives none.
 const DEFAULT_SEED: u32 = 1;
 
@@ -29,6 +32,8 @@ pub struct StudyFile {
     pub text: String,
     /// The technology's path as the study has it.
     pub(crate) technology_as_written: String,
+    /// All of them, where several are listed.
+    pub(crate) technologies_as_written: Vec<String>,
 }
 
 /// Reads and validates a study.
@@ -40,34 +45,57 @@ pub fn read(path: &Path) -> Result<StudyFile, Faults> {
 pub fn read_str(text: &str, path: &Path) -> Result<StudyFile, Faults> {
     let folder = path.parent().unwrap_or(Path::new(""));
     let walked = walk(text, path, SCHEMA, |root| {
-        let written = root.text("technology");
-        let study = build(root, folder.join(&written));
+        let written = root.texts("technology");
+        let study = build(root, written.iter().map(|w| folder.join(w)).collect());
         (study, written)
     })?;
-    let (study, technology_as_written) = walked.value;
+    let (study, technologies_as_written) = walked.value;
     Ok(StudyFile {
         study,
         lines: walked.lines,
         warnings: walked.warnings,
         text: text.to_owned(),
-        technology_as_written,
+        technology_as_written: technologies_as_written[0].clone(),
+        technologies_as_written,
     })
 }
 
-fn build(root: &Section<'_, '_>, technology: std::path::PathBuf) -> Study {
+fn build(root: &Section<'_, '_>, technologies: Vec<std::path::PathBuf>) -> Study {
     let title = root.text("title");
     let temperature = quantity(Dimension::Temperature, within(213.15, 473.15));
-    let temperature_k = root.optional("temperature", temperature);
+    let temperatures_k = if root.has("temperature") {
+        root.figures("temperature", temperature)
+    } else {
+        root.optional("temperature", temperature);
+        vec![DEFAULT_TEMPERATURE_K]
+    };
     let frequency = quantity(Dimension::Frequency, within(1e6, 3e11));
-    let frequency_hz = root.section("signal").required("frequency", frequency);
+    let frequencies_hz = root.section("signal").figures("frequency", frequency);
     let antenna = root.section("antenna");
     let resistance = quantity(Dimension::Resistance, within(0.1, 1e4));
     let antenna_resistance_ohm = antenna.required("resistance", resistance);
     let loss = quantity(Dimension::Decibel, within(0.0, 30.0));
     let antenna_loss_db = antenna.optional("loss", loss).unwrap_or(0.0);
     drop(antenna);
-    let stage = stage(&root.section("stage"));
-    let driver = driver(&root.section("driver"), stage.stack);
+    let section = root.section("stage");
+    let numbers = |key| -> Vec<u32> {
+        let read = section.figures(key, whole(1, 2));
+        read.into_iter().map(|n| n as u32).collect()
+    };
+    let (legs, stacks) = (numbers("legs"), numbers("stack"));
+    let devices = section.texts("device");
+    let networks = [("direct", Network::Direct), ("low-pass", Network::LowPass)];
+    let stage = StageChoice {
+        legs: legs[0],
+        stack: stacks[0],
+        device: devices[0].clone(),
+        network: section
+            .choice("network", &networks)
+            .unwrap_or(Network::LowPass),
+    };
+    drop(section);
+    let least_stacked = stacks.iter().copied().min().unwrap_or(1);
+    let driver = driver(&root.section("driver"), least_stacked);
     let space = root
         .optional_section("space")
         .map(|section| space(&section));
@@ -80,11 +108,24 @@ fn build(root: &Section<'_, '_>, technology: std::path::PathBuf) -> Study {
     if space.is_none() && design.is_none() {
         root.warning("", WarningKind::NothingToDo);
     }
+    let sweep = Sweep {
+        technologies: several(&technologies),
+        devices: several(&devices),
+        stacks: several(&stacks),
+        legs: several(&legs),
+        frequencies_hz: several(&frequencies_hz),
+        temperatures_k: several(&temperatures_k),
+    };
+    if sweep.variants() > MOST_VARIANTS {
+        let read = format!("lists of {} variants", sweep.variants());
+        let allowed = format!("at most {MOST_VARIANTS}, the product of all lists");
+        root.fault("", FaultKind::WrongType { read, allowed });
+    }
     Study {
         title,
-        technology,
-        temperature_k: temperature_k.unwrap_or(DEFAULT_TEMPERATURE_K),
-        frequency_hz,
+        technology: technologies[0].clone(),
+        temperature_k: temperatures_k[0],
+        frequency_hz: frequencies_hz[0],
         antenna_resistance_ohm,
         antenna_loss_db,
         stage,
@@ -93,18 +134,16 @@ fn build(root: &Section<'_, '_>, technology: std::path::PathBuf) -> Study {
         limits,
         search,
         design,
+        sweep,
     }
 }
 
-fn stage(section: &Section<'_, '_>) -> StageChoice {
-    let networks = [("direct", Network::Direct), ("low-pass", Network::LowPass)];
-    StageChoice {
-        legs: section.required("legs", whole(1, 2)) as u32,
-        stack: section.required("stack", whole(1, 2)) as u32,
-        device: section.text("device"),
-        network: section
-            .choice("network", &networks)
-            .unwrap_or(Network::LowPass),
+/// A list of more than one; empty for a single value.
+fn several<T: Clone>(list: &[T]) -> Vec<T> {
+    if list.len() > 1 {
+        list.to_vec()
+    } else {
+        Vec::new()
     }
 }
 
@@ -161,10 +200,12 @@ fn search(section: Option<&Section<'_, '_>>) -> SearchSettings {
         ("area", Objective::Area),
     ];
     let objectives = section.and_then(|section| section.choices("objectives", &names));
+    let fronts_by = section.and_then(|section| section.choices("fronts_by", &LISTED));
     let seed = section.and_then(|section| section.optional("seed", whole(0, u32::MAX)));
     SearchSettings {
         objectives: objectives.unwrap_or(names.map(|(_, objective)| objective).to_vec()),
         seed: seed.unwrap_or(f64::from(DEFAULT_SEED)) as u64,
+        fronts_by: fronts_by.unwrap_or_default(),
     }
 }
 

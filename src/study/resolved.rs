@@ -3,6 +3,7 @@
 //! Physics and search see only these types. They are built by [`crate::study::read`]; tests may build them
 //! directly.
 
+use super::sweep::{Listed, Sweep};
 use serde::{Deserialize, Serialize};
 use std::path::PathBuf;
 
@@ -33,6 +34,9 @@ pub struct Study {
     pub search: SearchSettings,
     /// One sizing, for `evaluate`; absent when the study has no `[design]`.
     pub design: Option<Design>,
+    /// What is listed; the single values above are then the first of each list.
+    #[serde(default, skip_serializing_if = "Sweep::is_empty")]
+    pub sweep: Sweep,
 }
 
 /// How many output legs and stacked devices, which transistor pair, which network.
@@ -174,6 +178,9 @@ pub struct SearchSettings {
     pub objectives: Vec<Objective>,
     /// Seed of every random choice.
     pub seed: u64,
+    /// The overall front is taken for each combination of these; over all when empty.
+    #[serde(default, skip_serializing_if = "Vec::is_empty")]
+    pub fronts_by: Vec<Listed>,
 }
 
 /// One sizing, SI. `None` where the network or the technology derives the value instead.

@@ -86,8 +86,10 @@ pub fn direct_study() -> Study {
         search: SearchSettings {
             objectives: vec![Objective::Efficiency],
             seed: 1,
+            fronts_by: Vec::new(),
         },
         design: None,
+        sweep: widefront::study::Sweep::default(),
     }
 }
 

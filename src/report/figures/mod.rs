@@ -74,6 +74,22 @@ impl From<&CellLine> for CellBest {
     }
 }
 
+/// The best of each loaded Q and supply, variants of a sweep taken together.
+pub fn best_cells(cells: &[CellLine]) -> Vec<CellBest> {
+    let mut best: Vec<CellBest> = Vec::new();
+    for cell in cells.iter().map(CellBest::from) {
+        let same = |c: &&mut CellBest| (c.loaded_q, c.supply_v) == (cell.loaded_q, cell.supply_v);
+        match best.iter_mut().find(same) {
+            Some(there) => {
+                let most = [there.efficiency, cell.efficiency].into_iter().flatten();
+                there.efficiency = most.reduce(f64::max);
+            }
+            None => best.push(cell),
+        }
+    }
+    best
+}
+
 type Drawn = Result<(), String>;
 
 /// Draws what the records allow into `folder`; returns the files.

@@ -16,6 +16,7 @@ const figures = [
   ["second_harmonic_dbc", "Second harmonic", "dBc", 1], ["third_harmonic_dbc", "Third harmonic", "dBc", 1],
   ["peak_drain_v", "Peak drain voltage", "V", 1], ["edge_time_fraction", "Edge time", "% of T", 100],
   ["design.dead_time", "Dead time", "% of T", 100], ["design.reactance", "Load angle x", "", 1],
+  ["variant.legs", "Legs", "", 1], ["variant.stack", "Devices a side", "", 1], ["variant.frequency_hz", "Carrier", "GHz", 1e-9], ["variant.temperature_k", "Junction", "K", 1],
   ["overdrive_use_n", "Overdrive use, N", "", 1], ["overdrive_use_p", "Overdrive use, P", "", 1], ["residual", "Residual", "", 1],
 ].filter(f => data.rows.some(r => number(r, f[0]) !== null)).map(([name, words, unit, factor]) => ({ name, words, unit, factor }));
 const figure = new Map(figures.map(f => [f.name, f]));
@@ -48,7 +49,9 @@ const spanOf = name => {
 
 const ranges = new Map();
 let oneCell = null, picked = [], told = null, sorted = { name: "efficiency", up: false };
-const keeps = row => (oneCell === null || number(row, "cell") === oneCell) &&
+// Cells of all variants at one loaded Q and supply stand together.
+const spotOf = new Map(data.cells.map(c => [c.cell, c.loaded_q + " " + c.supply_v]));
+const keeps = row => (oneCell === null || spotOf.get(number(row, "cell")) === oneCell) &&
   [...ranges].every(([name, [low, high]]) => { const v = number(row, name); return v !== null && v >= low && v <= high; });
 let kept = data.rows;
 
@@ -139,7 +142,7 @@ new ResizeObserver(draw).observe(canvas);
 
 // Brushes.
 const STEPS = 400;
-const brushed = ["efficiency", "output_power_dbm", "area_m2", "design.supply_v", "design.loaded_q", "design.nmos_width_m", "design.stages", "design.turns"];
+const brushed = ["efficiency", "output_power_dbm", "area_m2", "design.supply_v", "design.loaded_q", "design.nmos_width_m", "design.stages", "design.turns", "variant.legs", "variant.stack", "variant.frequency_hz", "variant.temperature_k"];
 for (const f of brushed.map(name => figure.get(name)).filter(Boolean)) {
   const [low, high] = spanOf(f.name);
   if (!(high > low)) continue;
@@ -171,20 +174,20 @@ const unique = list => [...new Set(list)].sort((a, b) => a - b);
 const qs = unique(data.cells.map(c => c.loaded_q)), supplies = unique(data.cells.map(c => c.supply_v));
 function map() {
   const best = new Map();
-  for (const r of data.rows) if (keepsBut(r)) { const c = number(r, "cell"), e = number(r, "efficiency"); if (!(best.get(c) >= e)) best.set(c, e); }
+  for (const r of data.rows) if (keepsBut(r)) { const c = spotOf.get(number(r, "cell")), e = number(r, "efficiency"); if (!(best.get(c) >= e)) best.set(c, e); }
   const [low, high] = spanOf("efficiency"), grid = get("map");
   grid.style.gridTemplateColumns = "auto repeat(" + supplies.length + ", minmax(34px, 1fr))";
   grid.replaceChildren(element("span", { className: "name", textContent: "Q \\ V" }), ...supplies.map(s => element("span", { className: "name", textContent: s === null ? "free" : +s.toPrecision(4) })));
   for (const q of qs) {
     grid.append(element("span", { className: "name", textContent: q === null ? "free" : +q.toPrecision(4) }));
     for (const s of supplies) {
-      const cell = data.cells.find(c => c.loaded_q === q && c.supply_v === s), e = cell && best.get(cell.cell);
+      const cell = data.cells.find(c => c.loaded_q === q && c.supply_v === s), key = q + " " + s, e = cell && best.get(key);
       const button = element("button", { type: "button", textContent: e === undefined ? "·" : (100 * e).toFixed(0), disabled: !cell });
       if (e !== undefined) { const t = high > low ? (e - low) / (high - low) : 0.5; button.style.background = tint(t); button.style.color = t > 0.55 ? "#111" : "#fff"; }
       if (cell) {
-        button.setAttribute("aria-pressed", oneCell === cell.cell);
+        button.setAttribute("aria-pressed", oneCell === key);
         button.setAttribute("aria-label", "loaded Q " + q + ", supply " + s + " V: " + (e === undefined ? "no design kept" : "best efficiency " + (100 * e).toFixed(1) + " %"));
-        button.addEventListener("click", () => { oneCell = oneCell === cell.cell ? null : cell.cell; refresh(); });
+        button.addEventListener("click", () => { oneCell = oneCell === key ? null : key; refresh(); });
       }
       grid.append(button);
     }
@@ -194,7 +197,9 @@ const keepsBut = row => { const one = oneCell; oneCell = null; const k = keeps(r
 
 // The table.
 const MOST_ROWS = 200, columns = figures.slice(0, 14);
-const titles = [{ name: "id", words: "Design", unit: "" }, ...columns].map(f => {
+// What tells variants of a sweep apart in words.
+const words = ["variant.technology", "variant.device"].filter(name => place.has(name)).map(name => ({ name, words: name.slice(8), unit: "" }));
+const titles = [{ name: "id", words: "Design", unit: "" }, ...columns, ...words].map(f => {
   const button = element("button", { type: "button", textContent: head(f) }), cell = element("th", { scope: "col" }, button);
   button.addEventListener("click", () => { sorted = { name: f.name, up: sorted.name === f.name ? !sorted.up : f.name === "id" || f.name === "area_m2" }; table(); });
   cell.dataset.figure = f.name;
@@ -202,7 +207,7 @@ const titles = [{ name: "id", words: "Design", unit: "" }, ...columns].map(f => 
 });
 get("titles").append(...titles);
 function table() {
-  const value = r => sorted.name === "id" ? id(r) : number(r, sorted.name), sign = sorted.up ? 1 : -1;
+  const value = r => sorted.name === "id" || words.some(w => w.name === sorted.name) ? r[place.get(sorted.name)] : number(r, sorted.name), sign = sorted.up ? 1 : -1;
   const rows = [...kept].sort((a, b) => {
     const [u, v] = [value(a), value(b)];
     return u === null ? 1 : v === null ? -1 : (u < v ? -sign : u > v ? sign : 0);
@@ -212,7 +217,7 @@ function table() {
     const button = element("button", { type: "button", textContent: id(r) });
     button.addEventListener("click", () => compare(r));
     const line = element("tr", { className: picked.includes(r) ? "picked" : "" }, element("td", {}, button));
-    line.append(...columns.map(f => element("td", { textContent: shown({ ...f, unit: "" }, number(r, f.name)) })));
+    line.append(...columns.map(f => element("td", { textContent: shown({ ...f, unit: "" }, number(r, f.name)) })), ...words.map(w => element("td", { textContent: r[place.get(w.name)] })));
     return line;
   }));
   get("count").textContent = kept.length + " of " + data.rows.length + " designs kept" + (kept.length > MOST_ROWS ? "; the first " + MOST_ROWS + " in this order are listed" : "");

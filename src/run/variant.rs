@@ -1,0 +1,137 @@
+//! Variants of a study that lists several technologies, devices and so on, and their cells.
+
+use super::RunError;
+use super::folder::read_run;
+use crate::evaluate::Setup;
+use crate::search::space::{self, Cell};
+use crate::study::{Listed, Space, Study};
+use crate::technology::Technology;
+use serde::de::DeserializeOwned;
+use serde::{Deserialize, Serialize};
+use serde_json::Value;
+use std::path::Path;
+
+/// One combination of what a study lists, ready to be searched.
+#[derive(Debug, Clone)]
+pub struct Variant {
+    /// The study with this combination alone.
+    pub study: Study,
+    /// Its technology.
+    pub technology: Technology,
+    /// Both together.
+    pub setup: Setup,
+}
+
+/// What tells variants apart, as designs and cells of a sweep carry it.
+#[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
+pub struct VariantLabel {
+    /// Name of the technology.
+    pub technology: String,
+    /// Transistor pair.
+    pub device: String,
+    /// Devices a side.
+    pub stack: u32,
+    /// Legs.
+    pub legs: u32,
+    /// Carrier, Hz.
+    pub frequency_hz: f64,
+    /// Junction, K.
+    pub temperature_k: f64,
+}
+
+impl VariantLabel {
+    /// Of a variant.
+    pub fn new(variant: &Variant) -> Self {
+        let study = &variant.study;
+        Self {
+            technology: variant.technology.name.clone(),
+            device: study.stage.device.clone(),
+            stack: study.stage.stack,
+            legs: study.stage.legs,
+            frequency_hz: study.frequency_hz,
+            temperature_k: study.temperature_k,
+        }
+    }
+
+    /// Its values of `keys`: equal for variants of one group.
+    pub fn group(&self, keys: &[Listed]) -> Vec<String> {
+        keys.iter()
+            .map(|key| match key {
+                Listed::Technology => self.technology.clone(),
+                Listed::Device => self.device.clone(),
+                Listed::Stack => self.stack.to_string(),
+                Listed::Legs => self.legs.to_string(),
+                Listed::Frequency => self.frequency_hz.to_string(),
+                Listed::Temperature => self.temperature_k.to_string(),
+            })
+            .collect()
+    }
+}
+
+/// A cell of a run: one of its variant's, under the number it has in the run.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct RunCell {
+    /// Number in the run: variants one after the other.
+    pub index: usize,
+    /// Which variant.
+    pub variant: usize,
+    /// The cell within its variant; what a search draws by seed depends on this alone.
+    pub cell: Cell,
+}
+
+/// Every cell of a run of so many variants.
+pub fn run_cells(space: &Space, variants: usize) -> Vec<RunCell> {
+    let cells = space::cells(space);
+    (0..variants)
+        .flat_map(|variant| {
+            let first = variant * cells.len();
+            cells.iter().map(move |&cell| RunCell {
+                index: first + cell.index,
+                variant,
+                cell,
+            })
+        })
+        .collect()
+}
+
+/// Study and technology of the variant that a cell of the run in `path` belongs to.
+///
+/// # Errors
+/// [`RunError::Damaged`] when the run's record holds none, or the system's.
+pub fn variant_of_cell(path: &Path, cell: usize) -> Result<(Study, Technology), RunError> {
+    let run = read_run(path)?;
+    let study: Study = part(path, &run, "study")?;
+    let damaged = |reason: &str| RunError::Damaged {
+        path: path.join("run.json"),
+        reason: format!("is damaged: {reason}"),
+    };
+    let space = study
+        .space
+        .as_ref()
+        .ok_or(damaged("its study has no space"))?;
+    let a_variant = space::cells(space).len().max(1);
+    let mut variants = study.variants();
+    if cell / a_variant >= variants.len() {
+        return Err(damaged("it has too few cells"));
+    }
+    let variant = variants.swap_remove(cell / a_variant);
+    let listed = &study.sweep.technologies;
+    let technology = match listed.iter().position(|t| *t == variant.technology) {
+        Some(place) => {
+            let mut all: Vec<Technology> = part(path, &run, "technologies")?;
+            if place >= all.len() {
+                return Err(damaged("a technology is missing"));
+            }
+            all.swap_remove(place)
+        }
+        None => part(path, &run, "technology")?,
+    };
+    Ok((variant, technology))
+}
+
+fn part<T: DeserializeOwned>(path: &Path, run: &Value, key: &str) -> Result<T, RunError> {
+    serde_json::from_value(run[key].clone()).map_err(|e| RunError::Damaged {
+        path: path.join("run.json"),
+        reason: format!("its {key} is damaged: {e}"),
+    })
+}
