@@ -109,7 +109,7 @@ pub fn drawing(sheet: &Sheet) -> String {
         TEXT,
         "start",
         &format!(
-            "Drivers and switches of {}, {:.1} times larger; fingers at a pitch of {}",
+            "Drivers and switches of {}, {:.1} times larger; W = devices × fingers × finger, pitch {}",
             if sheet.legs == 1 { "the leg" } else { "leg 1" },
             close_scale / scale,
             format(sheet.rules.finger_pitch_m, "m")
@@ -127,17 +127,26 @@ pub fn drawing(sheet: &Sheet) -> String {
             );
             text(&mut body, x, y - 4.0, TEXT, "start", &block.label);
             text(&mut body, x, y + 18.0, TEXT, "start", &block.detail);
-        } else if block.label.starts_with('P') {
+            continue;
+        }
+        // Neighbours' names at two heights, so that they do not run together.
+        let second = block
+            .label
+            .chars()
+            .nth(1)
+            .is_some_and(|c| "02468".contains(c));
+        let away = if second { 14.0 } else { 0.0 };
+        if block.label.starts_with('P') {
             text(
                 &mut body,
                 middle,
-                close.y(block.y) - 7.0,
+                close.y(block.y) - 7.0 - away,
                 14.0,
                 "middle",
                 &block.label,
             );
         } else {
-            let y = close.y(block.bottom()) + TEXT + 1.0;
+            let y = close.y(block.bottom()) + TEXT + 1.0 + away;
             text(&mut body, middle, y, 14.0, "middle", &block.label);
         }
     }
@@ -224,47 +233,38 @@ fn draw_block(body: &mut String, view: View, block: &Block, close: bool) {
     }
 }
 
-/// Names of the large blocks, inside where they fit.
+/// Names and measures of the large blocks: inside where both lines fit, else below.
 fn labels(body: &mut String, view: View, plan: &Floorplan) {
+    const DETAIL: f64 = 14.0;
     for block in &plan.blocks {
         if matches!(block.kind, Kind::Switch | Kind::Driver) {
             continue;
         }
         let (w, h) = (view.scale * block.width, view.scale * block.height);
-        let wide = 0.6 * TEXT * block.label.chars().count() as f64;
+        let length = |words: &str, size: f64| 0.58 * size * words.chars().count() as f64;
+        let wide = length(&block.label, TEXT).max(length(&block.detail, DETAIL));
         let x = view.x(block.x + 0.5 * block.width);
-        if w > wide && h > 1.4 * TEXT {
-            let y = view.y(block.y + 0.5 * block.height) + 0.35 * TEXT;
+        let tall = TEXT + DETAIL + 8.0;
+        let top = if w > wide + 8.0 && h > tall + 8.0 {
+            let top = view.y(block.y + 0.5 * block.height) - 0.5 * tall;
             let _ = writeln!(
                 body,
-                "<rect x=\"{:.1}\" y=\"{:.1}\" width=\"{:.1}\" height=\"{:.1}\" fill=\"#fff\" fill-opacity=\"0.85\"/>",
+                "<rect x=\"{:.1}\" y=\"{top:.1}\" width=\"{:.1}\" height=\"{tall:.1}\" fill=\"#fff\" fill-opacity=\"0.85\"/>",
                 x - 0.5 * wide - 4.0,
-                y - TEXT,
                 wide + 8.0,
-                1.35 * TEXT
             );
-            text(body, x, y, TEXT, "middle", &block.label);
+            top
         } else {
-            text(
-                body,
-                x,
-                view.y(block.bottom()) + TEXT + 2.0,
-                TEXT,
-                "middle",
-                &block.label,
-            );
-        }
-    }
-    if let (Some(first), Some(last)) = (plan.core.first(), plan.core.last()) {
-        let x = view.x(first.x) - 8.0;
-        let y = view.y(0.5 * (last.y + last.bottom() + first.y + first.bottom()) * 0.5);
+            view.y(block.bottom()) + 3.0
+        };
+        text(body, x, top + TEXT, TEXT, "middle", &block.label);
         text(
             body,
-            x.max(MARGIN + 60.0),
-            y + 5.0,
-            13.0,
-            "end",
-            "see below",
+            x,
+            top + TEXT + DETAIL + 3.0,
+            DETAIL,
+            "middle",
+            &block.detail,
         );
     }
 }
@@ -320,16 +320,18 @@ fn draw_spiral(body: &mut String, view: View, placed: &PlacedSpiral) {
         y + 0.5 * w,
         cy - half
     );
-    let small = 15.0;
+    // As large as fits in the hole, and still to be read.
+    let hole = px(s.inner_diameter_m);
+    let small = (0.062 * hole).clamp(9.0, 15.0);
     let note = format!("outer diameter {}", micrometres(s.diameter_m));
     text(body, cx, cy - 4.0, small, "middle", &note);
     let note = format!(
-        "{} × {}, spaced {}",
+        "{} turns of {}, {} apart",
         s.turns,
         micrometres(s.trace_m),
         micrometres(s.spacing_m)
     );
-    text(body, cx, cy + 18.0, small, "middle", &note);
+    text(body, cx, cy + small, small, "middle", &note);
     text(
         body,
         cx - reach - 0.5 * w - 6.0,
@@ -344,7 +346,7 @@ fn draw_spiral(body: &mut String, view: View, placed: &PlacedSpiral) {
         cy - half + 18.0,
         small,
         "start",
-        "to the antenna's side",
+        "to the antenna",
     );
 }
 
