@@ -19,7 +19,7 @@ use crate::stage::leg::{Leg, OnState};
 use crate::stage::network::{LoadNetwork, NetworkGivens};
 use crate::stage::{Coil, Impossible, Sizing};
 use crate::steady::circuit::Circuit;
-use crate::steady::period::{self, PeriodFigures};
+use crate::steady::period::{self, Harmonics, PeriodFigures};
 use crate::study::{Limits, Network, Study, Swing};
 use crate::technology::transistor::WarmPair;
 use crate::technology::{Capacitor, Inductor, Layout, Technology};
@@ -143,6 +143,15 @@ impl Setup {
         }
     }
 
+    /// The carrier and the harmonics that a limit holds.
+    pub fn limited_harmonics(&self) -> Harmonics {
+        let (second, third) = (
+            self.limits.second_harmonic_dbc,
+            self.limits.third_harmonic_dbc,
+        );
+        [true, second.is_some(), third.is_some(), false, false]
+    }
+
     /// Whether R_opt is the antenna's own.
     pub fn is_direct(&self) -> bool {
         self.network.kind == Network::Direct
@@ -194,7 +203,10 @@ pub struct Performance<S> {
     pub area: Area<S>,
 }
 
-/// Sections 2, 4 and 5: the leg, its network, their steady state.
+/// A switch of more than this passes nothing; the steady state of what is left is rounding.
+const CUT_OFF_OHM: f64 = 1e9;
+
+/// Sections 2, 4 and 5: the leg, its network, their steady state with the harmonics asked for.
 ///
 /// # Errors
 /// Why the design cannot exist.
@@ -202,6 +214,7 @@ pub fn core<S: Scalar>(
     setup: &Setup,
     sizing: &Sizing<S>,
     coil: &Coil<S>,
+    harmonics: Harmonics,
 ) -> Result<Core<S>, Impossible> {
     let network = LoadNetwork::new(
         &setup.network,
@@ -224,6 +237,16 @@ pub fn core<S: Scalar>(
             network.loop_impedance(setup.network.angular_frequency),
         )
         .ok_or(Impossible::Numbers)?;
+    let largest = on_state
+        .resistance_ohm
+        .map(S::value)
+        .into_iter()
+        .fold(0.0, f64::max);
+    if largest > CUT_OFF_OHM {
+        return Err(Impossible::CutOff {
+            resistance_ohm: largest,
+        });
+    }
     let plate_f =
         network.series_capacitance_f * (setup.capacitor.bottom_plate * f64::from(setup.legs));
     let circuit = Circuit {
@@ -235,7 +258,7 @@ pub fn core<S: Scalar>(
         on_resistance_ohm: on_state.resistance_ohm,
         network,
     };
-    let period = period::figures(&circuit).ok_or(Impossible::Numbers)?;
+    let period = period::figures(&circuit, harmonics).ok_or(Impossible::Numbers)?;
     Ok(Core {
         leg,
         on_state,

@@ -10,6 +10,7 @@ use widefront::search::Context;
 use widefront::search::front::non_dominated;
 use widefront::search::problem::{Goal, SliceProblem};
 use widefront::search::quadratic::MOST_VARIABLES;
+use widefront::search::solver::{Assessment, Constrained, Linear};
 use widefront::search::space::{Slice, cells, slices};
 use widefront::study::{Objective, Space};
 use widefront::{study, technology};
@@ -121,29 +122,25 @@ proptest! {
             setup: &FIXTURE.setup,
             slice,
             coil: CONTEXT.coil_source(slice.turns).unwrap(),
-            goal: Goal { best: Objective::Efficiency, least_ln_power: None, most_ln_area: None },
+            goal: Goal { best: Objective::Efficiency, least_ln_power: Some(0.0), most_ln_area: Some(0.0) },
         };
         let mut point = [0.0; MOST_VARIABLES];
         point[..8].copy_from_slice(&places);
-        let Ok(center) = problem.merits(&point) else { return Ok(()); };
+        let Some(center) = problem.assess(&point) else { return Ok(()); };
         for variable in 0..8 {
             let moved = |by: f64| {
                 let mut p = point;
                 p[variable] += by;
-                problem.merits(&p)
+                problem.assess(&p)
             };
-            let (Ok(up), Ok(down)) = (moved(STEP), moved(-STEP)) else { continue; };
-            let values = |m: &widefront::search::problem::Merits| -> Vec<f64> {
-                m.objectives.iter().chain(&m.limits).map(|l| l.value).collect()
+            let (Some(up), Some(down)) = (moved(STEP), moved(-STEP)) else { continue; };
+            // The targets make output power and area constraints of the problem.
+            let all = |a: &Assessment| -> Vec<Linear> {
+                std::iter::once(&a.cost).chain(&a.constraints).copied().collect()
             };
-            let slopes: Vec<f64> = center
-                .objectives
-                .iter()
-                .chain(&center.limits)
-                .map(|l| l.gradient[variable])
-                .collect();
-            for ((u, d), slope) in values(&up).iter().zip(values(&down)).zip(slopes) {
-                let difference = (u - d) / (2.0 * STEP);
+            for ((c, u), d) in all(&center).iter().zip(all(&up)).zip(all(&down)) {
+                let slope = c.gradient[variable];
+                let difference = (u.value - d.value) / (2.0 * STEP);
                 prop_assert!(
                     (difference - slope).abs() < TOLERANCE * (1.0 + slope.abs()),
                     "variable {}: {} {}", variable, difference, slope

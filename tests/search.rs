@@ -59,6 +59,8 @@ fn published_width_of_least_loss_in_closed_form() {
     let cell = cells(&space)[0];
     let front = search_cell(&context, &cell, &AtomicBool::new(false)).unwrap();
     assert_eq!(front.points.len(), 1);
+    // Progress counts what the cells count.
+    assert!(front.evaluations > 0 && context.spent() == front.evaluations);
     let found = front.points[0].evaluation.design.nmos_width_m;
     // Both gates at full swing, B = 1, κ_driver = 0.
     let charge_w_m = hz * supply * supply * 2.0 * gate_f_m;
@@ -160,9 +162,36 @@ fn law_the_same_bytes_at_any_thread_count_in_parts_and_after_damage() {
     };
     let missing = join(&parts[..2]).code(1);
     let complaints = String::from_utf8(missing.get_output().stderr.clone()).unwrap();
-    assert!(complaints.contains("in none of the parts: 2"));
+    assert!(complaints.contains("in none of the parts: 2; part 3/3 is not given"));
+    let lost = parts[2].join("cells/00002.json");
+    let kept = fs::read(&lost).unwrap();
+    fs::remove_file(&lost).unwrap();
+    let missing = join(&parts).code(1);
+    let complaints = String::from_utf8(missing.get_output().stderr.clone()).unwrap();
+    assert!(complaints.contains("in none of the parts: 2; part 3/3 is not finished"));
+    fs::write(&lost, &kept[1..]).unwrap();
+    let damaged = join(&parts).code(1);
+    let complaints = String::from_utf8(damaged.get_output().stderr.clone()).unwrap();
+    assert!(complaints.contains("part3/cells/00002.json: is damaged"));
+    fs::write(&lost, &kept).unwrap();
     join(&parts).success();
     assert!(read(&at("joined"), "front.csv") == front);
+    // A join that was broken off is done again.
+    fs::remove_file(at("joined").join("cells/00002.json")).unwrap();
+    fs::remove_file(at("joined").join("front.csv")).unwrap();
+    join(&parts).success();
+    assert!(read(&at("joined"), "front.csv") == front);
+    // Into a folder of another run it is refused.
+    let refused = Command::cargo_bin("widefront")
+        .unwrap()
+        .arg("join")
+        .arg(study_path("quick.toml"))
+        .arg(&parts[0])
+        .args(&parts)
+        .assert()
+        .code(1);
+    let complaints = String::from_utf8(refused.get_output().stderr.clone()).unwrap();
+    assert!(complaints.contains("part \"1/3\""), "{complaints}");
     assert!(read(&at("joined"), "cells.csv") == read(&one, "cells.csv"));
 }
 
@@ -186,5 +215,14 @@ fn law_what_cannot_be_written_is_an_error_and_no_panic() {
     let early = temp.path().join("early");
     fs::create_dir_all(early.join("cells")).unwrap();
     fs::write(early.join("lock"), "").unwrap();
+    let leftover = early.join(".run.json.Ab12Cd");
+    fs::write(&leftover, "{").unwrap();
     search(&["--quiet", "--part", "1/4", "--out", early.to_str().unwrap()]).success();
+    assert!(!leftover.exists());
+    // Cells of who knows which study are not taken for this one's.
+    fs::remove_file(early.join("run.json")).unwrap();
+    for list in ["front.csv", "front.json", "cells.csv"] {
+        fs::remove_file(early.join(list)).unwrap();
+    }
+    search(&["--quiet", "--part", "1/4", "--out", early.to_str().unwrap()]).code(2);
 }

@@ -1,6 +1,6 @@
 //! `widefront fit`: a technology's transistors from tables.
 
-use super::{Failure, print};
+use super::{Failure, print, tell};
 use crate::fit::residual::{GATE, JUNCTION, ON, Residual};
 use crate::fit::{self, Existing, FitError, FittedPair, Options, PerDevice};
 use crate::quantity::Dimension;
@@ -83,11 +83,11 @@ pub(crate) fn run(arguments: &FitArguments) -> Result<(), Failure> {
     for pair in &pairs {
         for device in &pair.devices {
             for warning in &device.warnings {
-                eprintln!(
+                tell(&format!(
                     "warning: {} {}: {warning}",
                     pair.name,
                     device.polarity.name()
-                );
+                ));
             }
         }
     }
@@ -104,11 +104,11 @@ pub(crate) fn run(arguments: &FitArguments) -> Result<(), Failure> {
             .iter()
             .map(|section| format!("[{section}]"))
             .collect();
-        eprintln!(
+        tell(&format!(
             "warning: {}: the transistors are complete; a study needs {} too",
             into.display(),
             sections.join(", ")
-        );
+        ));
     }
     print(&fit::report(&pairs))
 }
@@ -275,7 +275,7 @@ pub(crate) fn merits(
     let frequency_hz = parse("frequency", frequency, Dimension::Frequency)?;
     let file = crate::technology::read_str(text, path)?;
     for warning in &file.warnings {
-        eprintln!("{warning}");
+        tell(&warning.to_string());
     }
     print(&fit::merits(&file.technology, current_a, frequency_hz))
 }

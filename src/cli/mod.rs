@@ -4,6 +4,7 @@ mod check;
 mod evaluate;
 mod fit;
 mod pick;
+mod progress;
 mod search;
 mod sheet;
 
@@ -110,11 +111,16 @@ pub fn run() -> ExitCode {
 fn complain(message: &str) {
     for line in message.lines() {
         if line.starts_with("  ") {
-            eprintln!("{line}");
+            tell(line);
         } else {
-            eprintln!("error: {line}");
+            tell(&format!("error: {line}"));
         }
     }
+}
+
+/// A line on standard error. One that nobody can read is no reason to end a night's work.
+pub(crate) fn tell(line: &str) {
+    let _ = writeln!(std::io::stderr().lock(), "{line}");
 }
 
 /// Writes to standard output; a reader that went away is no error of ours.
@@ -142,7 +148,7 @@ pub(crate) fn load(path: &Path, set: &[String]) -> Result<Loaded, Failure> {
     }
     let technology = technology::read_for(&file)?;
     for warning in file.warnings.iter().chain(&technology.warnings) {
-        eprintln!("{warning}");
+        tell(&warning.to_string());
     }
     let technology = technology.technology;
     let setup = Setup::new(&file.study, &technology).map_err(|e| Failure::Input(e.to_string()))?;

@@ -1,18 +1,20 @@
-//! `widefront search` and `widefront join`: runs and their progress.
+//! `widefront search` and `widefront join`.
 
-use super::{Failure, Loaded, load, print};
+use super::progress::Progress;
+use super::{Failure, Loaded, complain, load, print};
 use crate::quantity::format as engineering;
 use crate::report::figures::{self, CellBest, FigureInput};
 use crate::run::RunError;
-use crate::run::records::CellRecord;
-use crate::run::session::{self, Finished, Job, Observer, Part};
-use indicatif::{ProgressBar, ProgressDrawTarget, ProgressStyle};
+use crate::run::join;
+use crate::run::session::{self, Finished, Job, Part};
+use signal_hook::consts::{SIGINT, SIGTERM};
+use signal_hook::iterator::Signals;
 use std::fmt::Write;
-use std::io::IsTerminal;
 use std::path::{Path, PathBuf};
+use std::str::FromStr;
+use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
-use std::sync::{Arc, Mutex};
-use std::time::{Duration, Instant};
+use std::time::Duration;
 
 #[derive(Debug, clap::Args)]
 pub struct SearchArguments {
@@ -28,7 +30,7 @@ pub struct SearchArguments {
     #[arg(long)]
     resume: bool,
     /// Do a share of the cells: 3/16 is the third of sixteen.
-    #[arg(long, value_name = "K/N", value_parser = part)]
+    #[arg(long, value_name = "K/N", value_parser = Part::from_str)]
     part: Option<Part>,
     /// No progress.
     #[arg(long, short)]
@@ -44,21 +46,6 @@ pub struct JoinArguments {
     /// The folders of all parts.
     #[arg(required = true)]
     parts: Vec<PathBuf>,
-}
-
-fn part(text: &str) -> Result<Part, String> {
-    let allowed = "K/N with 1 ≤ K ≤ N ≤ 100000, for example 3/16";
-    let (index, count) = text.split_once('/').ok_or(allowed)?;
-    let number = |s: &str| s.parse::<usize>().map_err(|_| allowed.to_owned());
-    let part = Part {
-        index: number(index)?,
-        count: number(count)?,
-    };
-    if (1..=part.count).contains(&part.index) && part.count <= 100_000 {
-        Ok(part)
-    } else {
-        Err(allowed.into())
-    }
 }
 
 impl From<RunError> for Failure {
@@ -78,10 +65,7 @@ pub fn run(arguments: &SearchArguments) -> Result<(), Failure> {
         Some(out) => out.clone(),
         None => default_folder(&arguments.study, arguments.part)?,
     };
-    let stop = Arc::new(AtomicBool::new(false));
-    let raised = Arc::clone(&stop);
-    ctrlc::set_handler(move || raised.store(true, Ordering::Relaxed))
-        .map_err(|e| Failure::Run(format!("cannot listen for signals: {e}")))?;
+    let stop = stop_at_signals(&out)?;
     let job = job(
         &loaded,
         &out,
@@ -95,11 +79,36 @@ pub fn run(arguments: &SearchArguments) -> Result<(), Failure> {
     close(&loaded, &out, finished?)
 }
 
+/// Raised by Ctrl-C and SIGTERM. What does not look at it in time is ended: every file is whole at any moment. SIGHUP is
+/// left as it comes, so that `nohup` works.
+fn stop_at_signals(out: &Path) -> Result<Arc<AtomicBool>, Failure> {
+    /// A signal ends the program within a second.
+    const PATIENCE: Duration = Duration::from_millis(700);
+    let stop = Arc::new(AtomicBool::new(false));
+    let raised = Arc::clone(&stop);
+    let out = out.to_owned();
+    let mut signals = Signals::new([SIGINT, SIGTERM])
+        .map_err(|e| Failure::Run(format!("cannot listen for signals: {e}")))?;
+    std::thread::spawn(move || {
+        if signals.forever().next().is_none() {
+            return;
+        }
+        raised.store(true, Ordering::Relaxed);
+        std::thread::sleep(PATIENCE);
+        complain(&format!(
+            "stopped; the finished cells are kept in {}, --resume goes on",
+            out.display()
+        ));
+        std::process::exit(1);
+    });
+    Ok(stop)
+}
+
 /// Joins parts.
 pub fn join(arguments: &JoinArguments) -> Result<(), Failure> {
     let loaded = load(&arguments.study, &[])?;
     let job = job(&loaded, &arguments.out, false, None, None);
-    let finished = session::join(&job, &arguments.parts, &Progress::new(true))?;
+    let finished = join::join(&job, &arguments.parts, &Progress::new(true))?;
     close(&loaded, &arguments.out, finished)
 }
 
@@ -142,8 +151,11 @@ fn close(loaded: &Loaded, out: &Path, finished: Finished) -> Result<(), Failure>
         sweep: finished.sweep.as_ref(),
         period: finished.period.as_ref(),
     };
-    figures::write_all(&finished.folder.path().join("figures"), &input)
-        .map_err(|e| Failure::Run(e.to_string()))?;
+    figures::write_all(&finished.folder.path().join("figures"), &input).map_err(|e| {
+        Failure::Run(format!(
+            "{e}; the run is whole but for its figures; mend this and draw them by search --resume"
+        ))
+    })?;
     let mut text = String::new();
     // Writing to a String cannot fail.
     let _ = writeln!(
@@ -190,132 +202,4 @@ fn close(loaded: &Loaded, out: &Path, finished: Finished) -> Result<(), Failure>
     }
     let _ = writeln!(text, "written to {}", out.display());
     print(&text)
-}
-
-/// A bar on a terminal, a plain line every few seconds elsewhere, nothing when quiet.
-struct Progress {
-    quiet: bool,
-    bar: Option<ProgressBar>,
-    state: Mutex<State>,
-}
-
-struct State {
-    began: Instant,
-    last_line: Instant,
-    cells: usize,
-    /// Finished before this sitting.
-    earlier: usize,
-    now: usize,
-    evaluations: u64,
-    best_efficiency: f64,
-}
-
-/// Time between lines when standard error is no terminal.
-const LINE_EVERY: Duration = Duration::from_secs(5);
-
-impl Progress {
-    fn new(quiet: bool) -> Self {
-        let bar = (!quiet && std::io::stderr().is_terminal()).then(|| {
-            let bar = ProgressBar::with_draw_target(Some(0), ProgressDrawTarget::stderr());
-            if let Ok(style) = ProgressStyle::with_template("{bar:30} {pos}/{len} cells  {msg}") {
-                bar.set_style(style);
-            }
-            bar.enable_steady_tick(Duration::from_millis(250));
-            bar
-        });
-        Self {
-            quiet,
-            bar,
-            state: Mutex::new(State {
-                began: Instant::now(),
-                last_line: Instant::now(),
-                cells: 0,
-                earlier: 0,
-                now: 0,
-                evaluations: 0,
-                best_efficiency: 0.0,
-            }),
-        }
-    }
-
-    fn end(&self) {
-        if let Some(bar) = &self.bar {
-            bar.finish_and_clear();
-        }
-    }
-}
-
-impl State {
-    /// Rate, time left from the cells measured so far, best efficiency.
-    fn described(&self) -> String {
-        let elapsed = self.began.elapsed().as_secs_f64();
-        let left = self.cells - self.earlier - self.now;
-        let seconds = elapsed / self.now.max(1) as f64 * left as f64;
-        format!(
-            "{:.0} evaluations/s, about {} left, best efficiency {:.2} %",
-            self.evaluations as f64 / elapsed.max(1e-9),
-            clock(seconds),
-            100.0 * self.best_efficiency
-        )
-    }
-}
-
-fn clock(seconds: f64) -> String {
-    let s = seconds.ceil() as u64;
-    if s >= 3600 {
-        format!("{} h {:02} min", s / 3600, s % 3600 / 60)
-    } else if s >= 60 {
-        format!("{} min {:02} s", s / 60, s % 60)
-    } else {
-        format!("{s} s")
-    }
-}
-
-impl Observer for Progress {
-    fn begins(&self, cells: usize, finished: usize) {
-        if let Ok(mut state) = self.state.lock() {
-            state.began = Instant::now();
-            state.last_line = Instant::now();
-            state.cells = cells;
-            state.earlier = finished;
-        }
-        if let Some(bar) = &self.bar {
-            bar.set_length(cells as u64);
-            bar.set_position(finished as u64);
-        }
-        if finished > 0 && !self.quiet {
-            eprintln!("going on: {finished} of {cells} cells are finished");
-        }
-    }
-
-    fn damaged(&self, error: &RunError) {
-        eprintln!("warning: {error}; this cell is searched again");
-    }
-
-    fn finished(&self, cell: &CellRecord) {
-        let Ok(mut state) = self.state.lock() else {
-            return;
-        };
-        state.now += 1;
-        state.evaluations += cell.evaluations;
-        let best = cell
-            .designs
-            .first()
-            .and_then(|d| d.evaluation.figures.as_ref());
-        state.best_efficiency = best
-            .map_or(0.0, |f| f.efficiency)
-            .max(state.best_efficiency);
-        if let Some(bar) = &self.bar {
-            bar.set_position((state.earlier + state.now) as u64);
-            bar.set_message(state.described());
-        } else if !self.quiet && state.last_line.elapsed() >= LINE_EVERY {
-            state.last_line = Instant::now();
-            eprintln!(
-                "{}/{} cells, {}",
-                state.earlier + state.now,
-                state.cells,
-                state.described()
-            );
-        }
-    }
 }

@@ -5,6 +5,7 @@ use super::{Evaluation, FixedInductor, Setup, core};
 use crate::numerics::scalar::Scalar;
 use crate::stage::Impossible;
 use crate::stage::driver::drawn_capacitances_f;
+use crate::steady::period::ALL_HARMONICS;
 use crate::steady::waveform::{Waveform, waveform};
 use crate::study::Design;
 use crate::technology::Inductor;
@@ -155,7 +156,7 @@ pub fn evaluate_drawn(
     own.chain.input_capacitance_f = drawn_capacitances_f(&setup.pair, *first, swing_v)[0];
 
     let sized = sizing(&values);
-    let core = core(&own, &sized, &coil)?;
+    let core = core(&own, &sized, &coil, ALL_HARMONICS)?;
     let resonance = spiral.and_then(|s| s.self_resonance_hz);
     let figures = full_figures(&own, &values, &coil, resonance, Some(&drawn.drivers_m));
     let evaluation = match figures {

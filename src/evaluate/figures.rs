@@ -5,6 +5,7 @@ use crate::budget::Losses;
 use crate::numerics::scalar::Scalar;
 use crate::stage::driver::Chain;
 use crate::stage::{Coil, Impossible, Sizing};
+use crate::steady::period::ALL_HARMONICS;
 use crate::steady::waveform::{self, Waveform};
 use crate::study::Design;
 use crate::technology::inductor::{self, SolvedSpiral, SpiralGeometry};
@@ -173,7 +174,7 @@ pub(super) fn full_figures(
     drivers_m: Option<&[[f64; 2]]>,
 ) -> Result<(Figures, Vec<Limit>), Impossible> {
     let sizing = sizing(values);
-    let core = core(setup, &sizing, coil)?;
+    let core = core(setup, &sizing, coil, ALL_HARMONICS)?;
     let residual_v = core.period.residual_v.map(Scalar::positive_part);
     let p: Performance<f64> = match drivers_m {
         None => performance(setup, &sizing, coil, &core, residual_v)?,
@@ -264,7 +265,7 @@ pub(super) fn full_figures(
 pub fn loop_waveform(setup: &Setup, design: &Design, samples: usize) -> Option<Waveform> {
     let mut values = design.clone();
     let (coil, _) = solve_coil(setup, design, &mut values).ok()?;
-    let core = core(setup, &sizing(&values), &coil).ok()?;
+    let core = core(setup, &sizing(&values), &coil, ALL_HARMONICS).ok()?;
     waveform::waveform(&core.circuit, samples)
 }
 

@@ -1,5 +1,6 @@
 //! Small square matrices on the stack, over any [`Scalar`]: product, solve, exponential with its halvings.
 
+use super::lyapunov;
 use super::scalar::Scalar;
 use arrayvec::ArrayVec;
 
@@ -23,15 +24,22 @@ pub fn identity<S: Scalar, const N: usize>() -> Matrix<S, N> {
 #[inline(always)]
 pub fn product<S: Scalar, const N: usize>(a: &Matrix<S, N>, b: &Matrix<S, N>) -> Matrix<S, N> {
     let mut c = [[S::zero(); N]; N];
+    multiply(a, b, &mut c);
+    c
+}
+
+/// `c ← a·b`, in place: matrices of numbers with derivatives are large enough for copies to count.
+#[inline(always)]
+fn multiply<S: Scalar, const N: usize>(a: &Matrix<S, N>, b: &Matrix<S, N>, c: &mut Matrix<S, N>) {
     for i in 0..N {
-        for k in 0..N {
-            let factor = a[i][k];
-            for j in 0..N {
-                c[i][j] += factor * b[k][j];
+        for j in 0..N {
+            let mut sum = a[i][0] * b[0][j];
+            for k in 1..N {
+                sum = sum.add_product(a[i][k], b[k][j]);
             }
+            c[i][j] = sum;
         }
     }
-    c
 }
 
 /// `a·x`.
@@ -40,47 +48,46 @@ pub fn apply<S: Scalar, const N: usize>(a: &Matrix<S, N>, x: &Column<S, N>) -> C
     let mut y = [S::zero(); N];
     for i in 0..N {
         for j in 0..N {
-            y[i] += a[i][j] * x[j];
+            y[i] = y[i].add_product(a[i][j], x[j]);
         }
     }
     y
 }
 
-/// Solves `a·x = b` by elimination with partial pivoting; `None` when a pivot vanishes.
+/// Solves `a·x = b` by elimination with partial pivoting; `None` when a pivot vanishes. The right side may carry
+/// derivatives.
 pub fn solve<S: Scalar, const N: usize>(
-    mut a: Matrix<S, N>,
+    mut a: Matrix<f64, N>,
     mut b: Column<S, N>,
 ) -> Option<Column<S, N>> {
     for column in 0..N {
         let mut pivot = column;
         for row in column + 1..N {
-            if a[row][column].value().abs() > a[pivot][column].value().abs() {
+            if a[row][column].abs() > a[pivot][column].abs() {
                 pivot = row;
             }
         }
-        let size = a[pivot][column].value().abs();
+        let size = a[pivot][column].abs();
         if size == 0.0 || !size.is_finite() {
             return None;
         }
         a.swap(column, pivot);
         b.swap(column, pivot);
-        let inverse = S::one() / a[column][column];
         for row in column + 1..N {
-            let factor = a[row][column] * inverse;
+            let factor = a[row][column] / a[column][column];
             for k in column..N {
                 let above = a[column][k];
                 a[row][k] -= factor * above;
             }
-            let above = b[column];
-            b[row] -= factor * above;
+            b[row] = b[row].add_scaled(b[column], -factor);
         }
     }
     for row in (0..N).rev() {
         let mut sum = b[row];
         for k in row + 1..N {
-            sum -= a[row][k] * b[k];
+            sum = sum.add_scaled(b[k], -a[row][k]);
         }
-        b[row] = sum / a[row][row];
+        b[row] = sum * (1.0 / a[row][row]);
     }
     Some(b)
 }
@@ -101,14 +108,16 @@ pub const MOST_HALVINGS: usize = 60;
 /// Norm below which the Taylor polynomial of degree 12 is exact to rounding: 0.35^13/13! < 2e-16.
 const STEP_NORM: f64 = 0.35;
 
-/// `e^x − 1`, together with `e^{x/2} − 1`, `e^{x/4} − 1`, … down to the step where a Taylor polynomial suffices
-/// (scaling and squaring: Higham, *Functions of Matrices*, 2008, ch. 10). The identity is kept apart, so that slow modes
-/// beside a fast one lose nothing to the many squarings the fast one asks for.
+/// `e^x − 1`, together with the values of `e^{x/2} − 1`, `e^{x/4} − 1`, … down to the step where a Taylor polynomial
+/// suffices (scaling and squaring: Higham, *Functions of Matrices*, 2008, ch. 10). The identity is kept apart, so that
+/// slow modes beside a fast one lose nothing to the many squarings the fast one asks for.
 pub struct Exponential<S, const N: usize> {
+    x: Matrix<S, N>,
+    less_identity: Matrix<S, N>,
     /// `powers[k] = e^{x/2^{halvings−k}} − 1`, k = 0..=halvings.
-    powers: ArrayVec<Matrix<S, N>, { MOST_HALVINGS + 1 }>,
+    powers: ArrayVec<Matrix<f64, N>, { MOST_HALVINGS + 1 }>,
     /// `x/2^halvings`.
-    step: Matrix<S, N>,
+    step: Matrix<f64, N>,
 }
 
 impl<S: Scalar, const N: usize> Exponential<S, N> {
@@ -116,15 +125,18 @@ impl<S: Scalar, const N: usize> Exponential<S, N> {
     #[inline(always)]
     pub fn empty() -> Self {
         Self {
+            x: [[S::zero(); N]; N],
+            less_identity: [[S::zero(); N]; N],
             powers: ArrayVec::new(),
-            step: [[S::zero(); N]; N],
+            step: [[0.0; N]; N],
         }
     }
 
-    /// The exponential of `x`; `None` when `x` is not finite or larger than can be halved.
+    /// The exponential of `x = a·t`; `None` when `x` is not finite or larger than can be halved.
     #[must_use]
-    pub fn fill(&mut self, x: &Matrix<S, N>) -> Option<()> {
-        let norm = norm_one(x);
+    pub fn fill(&mut self, a: &Matrix<S, N>, t: S) -> Option<()> {
+        each(&mut self.x, |i, j| a[i][j] * t);
+        let norm = norm_one(&self.x);
         if !norm.is_finite() {
             return None;
         }
@@ -137,40 +149,36 @@ impl<S: Scalar, const N: usize> Exponential<S, N> {
             return None;
         }
         let scale = 0.5f64.powi(halvings as i32);
-        self.step = x.map(|row| row.map(|entry| entry * scale));
+        let x = &self.x;
+        each(&mut self.step, |i, j| x[i][j].value() * scale);
+        taylor(|i, j| x[i][j] * scale, &mut self.less_identity);
         self.powers.clear();
-        self.powers.push(taylor(&self.step));
-        for k in 0..halvings {
+        self.powers.push(values(&self.less_identity));
+        let mut square = [[S::zero(); N]; N];
+        for _ in 0..halvings {
             // (1 + F)² − 1 = 2F + F²
-            let half = &self.powers[k];
-            let mut square = product(half, half);
-            for (row, from) in square.iter_mut().zip(half) {
-                for (entry, f) in row.iter_mut().zip(from) {
-                    *entry += *f * 2.0;
+            let half = &mut self.less_identity;
+            multiply(half, half, &mut square);
+            for i in 0..N {
+                for j in 0..N {
+                    half[i][j] = square[i][j].add_scaled(half[i][j], 2.0);
                 }
             }
-            self.powers.push(square);
+            self.powers.push(values(half));
         }
         Some(())
     }
 
-    /// The same exponential without derivatives.
-    pub fn values(&self) -> Exponential<f64, N> {
-        let plain = |m: &Matrix<S, N>| m.map(|row| row.map(S::value));
-        let mut values = Exponential::empty();
-        values.powers.extend(self.powers.iter().map(plain));
-        values.step = plain(&self.step);
-        values
-    }
-
     /// `e^{kx/8}·y` for k = 1..8, values only, handed to `visit` one after the other.
-    pub fn eighths(&self, y: &Column<S, N>, mut visit: impl FnMut(usize, &Column<f64, N>)) {
-        let mut at = y.map(S::value);
+    pub fn eighths(&self, y: &Column<f64, N>, mut visit: impl FnMut(usize, &Column<f64, N>)) {
+        let mut at = *y;
         let eighth: Matrix<f64, N> = match self.halvings().checked_sub(3) {
-            Some(k) => self.powers[k].map(|row| row.map(S::value)),
+            Some(k) => self.powers[k],
             None => {
                 let scale = 2f64.powi(self.halvings() as i32 - 3);
-                taylor(&self.step.map(|row| row.map(|entry| entry.value() * scale)))
+                let mut eighth = [[0.0; N]; N];
+                taylor(|i, j| self.step[i][j] * scale, &mut eighth);
+                eighth
             }
         };
         for k in 1..8 {
@@ -181,6 +189,11 @@ impl<S: Scalar, const N: usize> Exponential<S, N> {
 
     /// `e^x − 1`.
     pub fn less_identity(&self) -> &Matrix<S, N> {
+        &self.less_identity
+    }
+
+    /// The same, values only.
+    pub fn whole(&self) -> &Matrix<f64, N> {
         &self.powers[self.halvings()]
     }
 
@@ -188,8 +201,8 @@ impl<S: Scalar, const N: usize> Exponential<S, N> {
         self.powers.len() - 1
     }
 
-    /// `e^{fx}·y` for `0 ≤ f ≤ 1`: binary digits of `f` by the stored halvings, the rest by Taylor.
-    pub fn part(&self, fraction: f64, y: &Column<S, N>) -> Column<S, N> {
+    /// `e^{fx}·y` for `0 ≤ f ≤ 1`, values only: binary digits of `f` by the stored halvings, the rest by Taylor.
+    pub fn part(&self, fraction: f64, y: &Column<f64, N>) -> Column<f64, N> {
         let steps = fraction * 2f64.powi(self.halvings() as i32);
         let whole_steps = steps.floor();
         let mut y = *y;
@@ -206,18 +219,28 @@ impl<S: Scalar, const N: usize> Exponential<S, N> {
         at_fraction(&terms, rest)
     }
 
-    /// `∫₀¹ e^{sx} y yᵀ e^{sxᵀ} ds`: Gauss-Legendre on the smallest step, then
-    /// `W(2h) = W(h) + e^h W(h) (e^h)ᵀ`, a sum of positive terms only.
-    pub fn second_moment(&self, y: &Column<S, N>) -> Matrix<S, N> {
-        let terms = self.taylor_terms(y);
-        let mut w = [[S::zero(); N]; N];
+    /// `e^{fx}·y` at a fixed `f` with its derivatives; `None` as in [`Exponential::fill`].
+    pub fn moving_part(&self, fraction: f64, y: &Column<S, N>) -> Option<Column<S, N>> {
+        let mut part = Self::empty();
+        part.fill(&self.x, S::constant(fraction))?;
+        Some(advanced(part.less_identity(), y))
+    }
+
+    /// `Σ ∫₀¹ y(s) y(s)ᵀ ds` over the given arcs `y(s) = e^{sx} y₀` (start and end of each): values by Gauss-Legendre on
+    /// the smallest step, then `W(2h) = W(h) + e^h W(h) (e^h)ᵀ`, a sum of positive terms only; derivatives from
+    /// [`lyapunov::derivatives`].
+    pub fn second_moment(&self, arcs: &[[&Column<S, N>; 2]]) -> Matrix<S, N> {
+        let mut w = [[0.0; N]; N];
         let step = 0.5f64.powi(self.halvings() as i32);
-        for (node, weight) in GAUSS_NODES {
-            let x = at_fraction(&terms, node);
-            for i in 0..N {
-                let scaled = x[i] * (weight * step);
-                for j in 0..=i {
-                    w[i][j] += scaled * x[j];
+        for [start, _] in arcs {
+            let terms = self.taylor_terms(&start.map(S::value));
+            for (node, weight) in GAUSS_NODES {
+                let x = at_fraction(&terms, node);
+                for i in 0..N {
+                    let scaled = x[i] * (weight * step);
+                    for j in 0..=i {
+                        w[i][j] += scaled * x[j];
+                    }
                 }
             }
         }
@@ -240,17 +263,39 @@ impl<S: Scalar, const N: usize> Exponential<S, N> {
                 }
             }
         }
-        w
+        if S::MOVES {
+            lyapunov::derivatives(&self.x, &w, arcs)
+        } else {
+            w.map(|row| row.map(S::constant))
+        }
     }
 
     /// `(step)^k y/k!`, k = 0..=12.
-    fn taylor_terms(&self, y: &Column<S, N>) -> [Column<S, N>; 13] {
-        let mut terms = [[S::zero(); N]; 13];
+    fn taylor_terms(&self, y: &Column<f64, N>) -> [Column<f64, N>; 13] {
+        let mut terms = [[0.0; N]; 13];
         terms[0] = *y;
         for k in 1..13 {
             terms[k] = apply(&self.step, &terms[k - 1]).map(|entry| entry * (1.0 / k as f64));
         }
         terms
+    }
+}
+
+/// A matrix without derivatives.
+#[inline(always)]
+fn values<S: Scalar, const N: usize>(m: &Matrix<S, N>) -> Matrix<f64, N> {
+    let mut plain = [[0.0; N]; N];
+    each(&mut plain, |i, j| m[i][j].value());
+    plain
+}
+
+/// Sets every entry.
+#[inline(always)]
+fn each<S: Scalar, const N: usize>(m: &mut Matrix<S, N>, entry: impl Fn(usize, usize) -> S) {
+    for i in 0..N {
+        for j in 0..N {
+            m[i][j] = entry(i, j);
+        }
     }
 }
 
@@ -275,57 +320,48 @@ pub fn advanced<S: Scalar, const N: usize>(f: &Matrix<S, N>, y: &Column<S, N>) -
 }
 
 #[inline(always)]
-fn at_fraction<S: Scalar, const N: usize>(
-    terms: &[Column<S, N>; 13],
-    fraction: f64,
-) -> Column<S, N> {
+fn at_fraction<const N: usize>(terms: &[Column<f64, N>; 13], fraction: f64) -> Column<f64, N> {
     let mut sum = terms[12];
     for term in terms[..12].iter().rev() {
         for i in 0..N {
-            sum[i] = sum[i] * fraction + term[i];
+            sum[i] = term[i].add_product(sum[i], fraction);
         }
     }
     sum
 }
 
-/// Taylor polynomial of `e^x − 1` of degree 12 in five products (Paterson and Stockmeyer 1973).
-fn taylor<S: Scalar, const N: usize>(x: &Matrix<S, N>) -> Matrix<S, N> {
-    let x2 = product(x, x);
-    let x3 = product(&x2, x);
-    let x4 = product(&x2, &x2);
-    let block = |c0: f64, c1: f64, c2: f64, c3: f64| {
-        let mut b = [[S::zero(); N]; N];
-        for i in 0..N {
-            for j in 0..N {
-                b[i][j] = x[i][j] * c1 + x2[i][j] * c2 + x3[i][j] * c3;
-            }
-            b[i][i] += S::constant(c0);
-        }
-        b
+/// Taylor polynomial of `e^x − 1` of degree 12 in five products (Paterson and Stockmeyer 1973), into `sum`.
+#[inline(always)]
+fn taylor<S: Scalar, const N: usize>(entry: impl Fn(usize, usize) -> S, sum: &mut Matrix<S, N>) {
+    let mut x = [[S::zero(); N]; N];
+    let (mut x2, mut x3, mut x4) = (x, x, x);
+    each(&mut x, entry);
+    multiply(&x, &x, &mut x2);
+    multiply(&x2, &x, &mut x3);
+    multiply(&x2, &x2, &mut x4);
+    let block = |c: [f64; 4], i: usize, j: usize| {
+        let powers = (x[i][j] * c[1])
+            .add_scaled(x2[i][j], c[2])
+            .add_scaled(x3[i][j], c[3]);
+        if i == j { powers + c[0] } else { powers }
     };
-    let mut sum = block(
+    let highest = [
         1.0 / 40_320.0,
         1.0 / 362_880.0,
         1.0 / 3_628_800.0,
         1.0 / 39_916_800.0,
-    );
-    for (i, row) in sum.iter_mut().enumerate() {
-        for (j, entry) in row.iter_mut().enumerate() {
-            *entry += x4[i][j] * (1.0 / 479_001_600.0);
-        }
-    }
+    ];
+    each(sum, |i, j| {
+        block(highest, i, j).add_scaled(x4[i][j], 1.0 / 479_001_600.0)
+    });
+    let mut raised = [[S::zero(); N]; N];
     for lower in [
-        block(1.0 / 24.0, 1.0 / 120.0, 1.0 / 720.0, 1.0 / 5040.0),
-        block(0.0, 1.0, 0.5, 1.0 / 6.0),
+        [1.0 / 24.0, 1.0 / 120.0, 1.0 / 720.0, 1.0 / 5040.0],
+        [0.0, 1.0, 0.5, 1.0 / 6.0],
     ] {
-        sum = product(&x4, &sum);
-        for i in 0..N {
-            for j in 0..N {
-                sum[i][j] += lower[i][j];
-            }
-        }
+        multiply(&x4, sum, &mut raised);
+        each(sum, |i, j| raised[i][j] + block(lower, i, j));
     }
-    sum
 }
 
 #[cfg(test)]
@@ -338,7 +374,7 @@ mod tests {
 
     fn filled<S: Scalar, const N: usize>(x: &Matrix<S, N>) -> Option<Exponential<S, N>> {
         let mut e = Exponential::empty();
-        e.fill(x)?;
+        e.fill(x, S::one())?;
         Some(e)
     }
 
@@ -379,7 +415,8 @@ mod tests {
             assert!((x[0] - radius * (b * fraction).cos()).abs() < TOLERANCE);
             assert!((x[1] - radius * (b * fraction).sin()).abs() < TOLERANCE);
         }
-        let w = e.second_moment(&y);
+        let end = advanced(e.less_identity(), &y);
+        let w = e.second_moment(&[[&y, &end]]);
         // ∫ e^{-2as} ds and ∫ 4 e^{-2fs} ds
         let rotation = (1.0 - (-2.0 * a).exp()) / (2.0 * a);
         assert!((w[0][0] + w[1][1] - rotation).abs() < TOLERANCE);

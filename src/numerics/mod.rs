@@ -4,6 +4,7 @@ pub mod chebyshev;
 pub mod complex;
 pub mod elliptic;
 pub mod hypervolume;
+pub mod lyapunov;
 pub mod matrix;
 pub mod root;
 pub mod scalar;

@@ -19,6 +19,9 @@ pub trait Scalar:
     + Mul<f64, Output = Self>
     + Div<f64, Output = Self>
 {
+    /// Whether numbers of this type carry derivatives.
+    const MOVES: bool;
+
     /// A number that does not depend on the variables.
     fn constant(value: f64) -> Self;
 
@@ -70,6 +73,17 @@ pub trait Scalar:
         (self.chain(sin, cos), self.chain(cos, -sin))
     }
 
+    /// `self + a·b`, fused where the processor does that.
+    fn add_product(self, a: Self, b: Self) -> Self;
+
+    /// `self + a·b` with a plain `b`.
+    fn add_scaled(self, a: Self, b: f64) -> Self;
+
+    /// The derivatives alone: the number less its value.
+    fn movement(self) -> Self {
+        self - self.value()
+    }
+
     /// The square.
     fn squared(self) -> Self {
         self * self
@@ -107,7 +121,27 @@ fn logistic(x: f64) -> f64 {
     }
 }
 
+/// `a·b + c`, fused where the build's processor has the instruction: elsewhere fusing is slow.
+#[inline(always)]
+fn multiply_add(a: f64, b: f64, c: f64) -> f64 {
+    if cfg!(target_feature = "fma") {
+        a.mul_add(b, c)
+    } else {
+        a * b + c
+    }
+}
+
 impl Scalar for f64 {
+    const MOVES: bool = false;
+
+    #[inline(always)]
+    fn add_product(self, a: Self, b: Self) -> Self {
+        multiply_add(a, b, self)
+    }
+    #[inline(always)]
+    fn add_scaled(self, a: Self, b: f64) -> Self {
+        multiply_add(a, b, self)
+    }
     fn constant(value: f64) -> Self {
         value
     }
@@ -154,13 +188,38 @@ impl<const N: usize> Dual<N> {
     fn map2(self, other: Self, value: f64, by_self: f64, by_other: f64) -> Self {
         let mut partials = [0.0; N];
         for (i, p) in partials.iter_mut().enumerate() {
-            *p = by_self * self.partials[i] + by_other * other.partials[i];
+            *p = multiply_add(by_self, self.partials[i], by_other * other.partials[i]);
         }
         Self { value, partials }
     }
 }
 
 impl<const N: usize> Scalar for Dual<N> {
+    const MOVES: bool = true;
+
+    #[inline(always)]
+    fn add_product(self, a: Self, b: Self) -> Self {
+        let mut partials = [0.0; N];
+        for (i, p) in partials.iter_mut().enumerate() {
+            let by_a = multiply_add(b.value, a.partials[i], self.partials[i]);
+            *p = multiply_add(a.value, b.partials[i], by_a);
+        }
+        Self {
+            value: multiply_add(a.value, b.value, self.value),
+            partials,
+        }
+    }
+    #[inline(always)]
+    fn add_scaled(self, a: Self, b: f64) -> Self {
+        let mut partials = [0.0; N];
+        for (i, p) in partials.iter_mut().enumerate() {
+            *p = multiply_add(b, a.partials[i], self.partials[i]);
+        }
+        Self {
+            value: multiply_add(a.value, b, self.value),
+            partials,
+        }
+    }
     #[inline(always)]
     fn constant(value: f64) -> Self {
         Self {

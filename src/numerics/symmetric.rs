@@ -1,5 +1,7 @@
 //! Elimination of a dense complex symmetric matrix.
 
+use super::scalar::Scalar;
+
 /// A complex symmetric matrix, upper triangle by rows, real and imaginary parts apart (so that rows are taken several
 /// numbers at once).
 #[derive(Debug, Clone, Default)]
@@ -113,8 +115,12 @@ fn subtract(factor: (f64, f64), u_re: &[f64], u_im: &[f64], a_re: &mut [f64], a_
     let n = a_re.len();
     let (u_re, u_im, a_im) = (&u_re[..n], &u_im[..n], &mut a_im[..n]);
     for j in 0..n {
-        a_re[j] -= factor.0 * u_re[j] - factor.1 * u_im[j];
-        a_im[j] -= factor.0 * u_im[j] + factor.1 * u_re[j];
+        a_re[j] = a_re[j]
+            .add_product(u_re[j], -factor.0)
+            .add_product(u_im[j], factor.1);
+        a_im[j] = a_im[j]
+            .add_product(u_im[j], -factor.0)
+            .add_product(u_re[j], -factor.1);
     }
 }
 
@@ -128,12 +134,26 @@ fn subtract_four(rows: [Scaled<'_>; PANEL], a_re: &mut [f64], a_im: &mut [f64]) 
     let (r0, r1, r2, r3) = (&r0[..n], &r1[..n], &r2[..n], &r3[..n]);
     let (i0, i1, i2, i3) = (&i0[..n], &i1[..n], &i2[..n], &i3[..n]);
     for j in 0..n {
-        let re01 = (f0.0 * r0[j] - f0.1 * i0[j]) + (f1.0 * r1[j] - f1.1 * i1[j]);
-        let re23 = (f2.0 * r2[j] - f2.1 * i2[j]) + (f3.0 * r3[j] - f3.1 * i3[j]);
-        let im01 = (f0.0 * i0[j] + f0.1 * r0[j]) + (f1.0 * i1[j] + f1.1 * r1[j]);
-        let im23 = (f2.0 * i2[j] + f2.1 * r2[j]) + (f3.0 * i3[j] + f3.1 * r3[j]);
-        a_re[j] -= re01 + re23;
-        a_im[j] -= im01 + im23;
+        let re = a_re[j]
+            .add_product(r0[j], -f0.0)
+            .add_product(i0[j], f0.1)
+            .add_product(r1[j], -f1.0)
+            .add_product(i1[j], f1.1)
+            .add_product(r2[j], -f2.0)
+            .add_product(i2[j], f2.1)
+            .add_product(r3[j], -f3.0)
+            .add_product(i3[j], f3.1);
+        let im = a_im[j]
+            .add_product(i0[j], -f0.0)
+            .add_product(r0[j], -f0.1)
+            .add_product(i1[j], -f1.0)
+            .add_product(r1[j], -f1.1)
+            .add_product(i2[j], -f2.0)
+            .add_product(r2[j], -f2.1)
+            .add_product(i3[j], -f3.0)
+            .add_product(r3[j], -f3.1);
+        a_re[j] = re;
+        a_im[j] = im;
     }
 }
 

@@ -5,6 +5,7 @@ use super::{RunError, digest};
 use atomic_write_file::AtomicWriteFile;
 use serde::{Deserialize, Serialize};
 use serde_json::Value;
+use std::ffi::OsStr;
 use std::fs::{File, TryLockError};
 use std::io::Write;
 use std::path::{Path, PathBuf};
@@ -31,51 +32,76 @@ fn io(path: &Path) -> impl FnOnce(std::io::Error) -> RunError + '_ {
     }
 }
 
+fn write(path: &Path) -> impl FnOnce(std::io::Error) -> RunError + '_ {
+    move |error| RunError::Write {
+        path: path.to_owned(),
+        error,
+    }
+}
+
 impl RunFolder {
     /// Makes a new run folder and locks it before any work.
     ///
     /// # Errors
-    /// [`RunError::Exists`], [`RunError::NotARun`], [`RunError::Busy`] or the system's.
+    /// [`RunError::Exists`], [`RunError::NotARun`], [`RunError::Busy`] or [`RunError::Make`].
     pub fn create(path: &Path) -> Result<Self, RunError> {
-        if path.join("run.json").exists() {
+        let record = path.join(RECORD);
+        if record.exists() {
             // Held by a running search, it is busy rather than finished.
-            drop(lock(path)?);
+            return Err(match lock(path) {
+                Err(busy @ RunError::Busy(_)) => busy,
+                _ => RunError::Exists(path.to_owned()),
+            });
+        }
+        if path.is_dir() && holds_other_than_a_beginning(path).map_err(io(path))? {
+            return Err(RunError::NotARun(path.to_owned()));
+        }
+        let folder = std::fs::create_dir_all(path)
+            .map_err(write(path))
+            .and_then(|()| Self::locked(path))
+            .map_err(RunError::before_work)?;
+        // Another search may have come and gone before the lock was ours.
+        if record.exists() {
             return Err(RunError::Exists(path.to_owned()));
         }
-        if path.is_dir() {
-            // A search killed before it wrote its record leaves its empty rooms.
-            let ours =
-                |name: &std::ffi::OsStr| [LOCK, "cells", "figures"].iter().any(|o| name == *o);
-            let mut entries = std::fs::read_dir(path).map_err(io(path))?;
-            if entries.any(|e| e.is_ok_and(|e| !ours(&e.file_name()))) {
-                return Err(RunError::NotARun(path.to_owned()));
-            }
-        }
-        for folder in [path.to_owned(), path.join("cells"), path.join("figures")] {
-            std::fs::create_dir_all(&folder).map_err(io(&folder))?;
-        }
-        Ok(Self {
-            path: path.to_owned(),
-            _lock: lock(path)?,
-        })
+        Ok(folder)
     }
 
     /// Locks an existing run folder to go on with it.
     ///
     /// # Errors
-    /// [`RunError::Damaged`] when there is no run, [`RunError::Busy`] or the system's.
+    /// [`RunError::Damaged`] when there is no run, [`RunError::Busy`] or [`RunError::Write`].
     pub fn open(path: &Path) -> Result<Self, RunError> {
-        let record = path.join("run.json");
+        let record = path.join(RECORD);
         if !record.exists() {
             return Err(RunError::Damaged {
                 path: record,
-                reason: "is not there; this folder holds no run to resume".into(),
+                reason: "is not there, so there is no run to go on with; start it without --resume"
+                    .into(),
             });
         }
-        Ok(Self {
+        Self::locked(path)
+    }
+
+    /// Locks the folder, makes its rooms and clears them of what writes that were killed left.
+    fn locked(path: &Path) -> Result<Self, RunError> {
+        let folder = Self {
             path: path.to_owned(),
             _lock: lock(path)?,
-        })
+        };
+        for room in ROOMS {
+            let room = path.join(room);
+            std::fs::create_dir_all(&room).map_err(write(&room))?;
+        }
+        for place in rooms(path) {
+            for entry in std::fs::read_dir(&place).map_err(io(&place))?.flatten() {
+                if is_leftover(&entry.file_name()) {
+                    // One that stays does no harm: nothing reads it.
+                    let _ = std::fs::remove_file(entry.path());
+                }
+            }
+        }
+        Ok(folder)
     }
 
     /// The folder.
@@ -93,7 +119,7 @@ impl RunFolder {
             file.write_all(bytes)?;
             file.commit()
         });
-        written.map_err(io(&path))
+        written.map_err(write(&path))
     }
 
     /// Writes a value as JSON.
@@ -130,6 +156,36 @@ impl RunFolder {
 }
 
 const LOCK: &str = "lock";
+const RECORD: &str = "run.json";
+const ROOMS: [&str; 2] = ["cells", "figures"];
+
+/// The folder and its rooms.
+fn rooms(path: &Path) -> impl Iterator<Item = PathBuf> + '_ {
+    std::iter::once(path.to_owned()).chain(ROOMS.iter().map(|room| path.join(room)))
+}
+
+/// Whether a file is the temporary of a write that was killed: `.00003.json.Ab12Cd`, `.front.tmp.png`.
+fn is_leftover(name: &OsStr) -> bool {
+    let name = name.to_string_lossy();
+    name.starts_with('.')
+        && [".json.", ".csv.", ".tmp."]
+            .iter()
+            .any(|m| name.contains(m))
+}
+
+/// Whether a folder without a record holds more than a search leaves that was killed before it wrote one.
+fn holds_other_than_a_beginning(path: &Path) -> std::io::Result<bool> {
+    for place in rooms(path).filter(|place| place.is_dir()) {
+        for entry in std::fs::read_dir(&place)? {
+            let name = entry?.file_name();
+            let ours = place == path && (name == LOCK || ROOMS.iter().any(|room| name == *room));
+            if !ours && !is_leftover(&name) {
+                return Ok(true);
+            }
+        }
+    }
+    Ok(false)
+}
 
 /// Name of a cell's file in its folder.
 pub fn cell_name(cell: usize) -> String {
@@ -143,7 +199,7 @@ fn lock(path: &Path) -> Result<File, RunError> {
         .truncate(false)
         .write(true)
         .open(&name)
-        .map_err(io(&name))?;
+        .map_err(write(&name))?;
     match file.try_lock() {
         Ok(()) => Ok(file),
         Err(TryLockError::WouldBlock) => Err(RunError::Busy(path.to_owned())),
@@ -156,7 +212,7 @@ fn lock(path: &Path) -> Result<File, RunError> {
 /// # Errors
 /// [`RunError::Damaged`] when it is no run record of this schema, or the system's.
 pub fn read_run(path: &Path) -> Result<Value, RunError> {
-    let name = path.join("run.json");
+    let name = path.join(RECORD);
     let text = std::fs::read_to_string(&name).map_err(io(&name))?;
     let damaged = |reason: String| RunError::Damaged {
         path: name.clone(),

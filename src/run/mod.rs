@@ -1,7 +1,9 @@
 //! Run folders: records, writing, reading, going on, joining.
 
 pub mod folder;
+pub mod join;
 pub mod records;
+mod same;
 pub mod session;
 pub mod summary;
 mod table;
@@ -14,11 +16,33 @@ use thiserror::Error;
 #[derive(Debug, Error)]
 pub enum RunError {
     /// The system refused.
-    #[error("{path}: {error}; what is finished is kept, --resume goes on from it", path = .path.display())]
+    #[error("{path}: {error}", path = .path.display())]
     Io {
         /// File or folder.
         path: PathBuf,
         /// What it said.
+        error: std::io::Error,
+    },
+    /// The run folder cannot be begun.
+    #[error(
+        "{path}: cannot be made: {error}; no work was started; {} and start again, or choose another folder with --out",
+        remedy(.error), path = .path.display()
+    )]
+    Make {
+        /// File or folder.
+        path: PathBuf,
+        /// What the system said.
+        error: std::io::Error,
+    },
+    /// A file of a run that has begun cannot be written.
+    #[error(
+        "{path}: cannot be written: {error}; what is finished is kept; {} and go on (search --resume, or join again)",
+        remedy(.error), path = .path.display()
+    )]
+    Write {
+        /// File.
+        path: PathBuf,
+        /// What the system said.
         error: std::io::Error,
     },
     /// Another search works in this folder.
@@ -48,7 +72,7 @@ pub enum RunError {
         reason: String,
     },
     /// The folder's run is of another study, technology, program or part.
-    #[error("{path}: this run is of {differences}; resume it with what it was started with, or choose another folder", path = .path.display())]
+    #[error("{path}: this run is of {differences}; go on with what it was started with, or choose another folder", path = .path.display())]
     Different {
         /// Folder.
         path: PathBuf,
@@ -74,6 +98,27 @@ pub enum RunError {
     /// Nothing found.
     #[error("no feasible design in any cell; widen [space] or loosen [limits]")]
     NothingFeasible,
+}
+
+impl RunError {
+    /// The same failure when nothing is in the folder yet.
+    fn before_work(self) -> Self {
+        match self {
+            Self::Write { path, error } => Self::Make { path, error },
+            other => other,
+        }
+    }
+}
+
+/// What mends a refusal to write.
+fn remedy(error: &std::io::Error) -> &'static str {
+    use std::io::ErrorKind as Kind;
+    match error.kind() {
+        Kind::StorageFull | Kind::QuotaExceeded | Kind::FileTooLarge => "make room on the disk",
+        Kind::ReadOnlyFilesystem | Kind::PermissionDenied => "make the folder writable",
+        Kind::NotADirectory | Kind::AlreadyExists => "take the file out of its way",
+        _ => "mend this",
+    }
 }
 
 /// blake3 of a value's JSON.

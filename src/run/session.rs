@@ -1,23 +1,22 @@
 //! One sitting of a search: what is missing is searched on all threads, each finished cell on disk at once.
 
-use super::folder::{RunFolder, cell_name, read_cell, read_run};
-use super::records::{
-    CellRecord, DesignRecord, HypervolumeReference, PeriodRecord, RunRecord, SCHEMA, WidthSweep,
-};
-use super::summary::{Summary, front_hypervolume, summarise};
+use super::folder::{RunFolder, read_cell, read_run};
+use super::records::{CellRecord, DesignRecord, PeriodRecord, RunRecord, SCHEMA, WidthSweep};
+use super::same::same_run;
+use super::summary::{Standing, Summary, front_hypervolume, hypervolume_reference, summarise};
 use super::{RunError, digest};
 use crate::evaluate::{Setup, evaluate, loop_waveform};
 use crate::search::Context;
 use crate::search::cell::{CERTIFIED_RESIDUAL, CellFront, search_cell};
 use crate::search::space::{self, Cell};
 use crate::study::{Design, Space, Study};
-use crate::technology::{Inductor, Technology};
+use crate::technology::Technology;
 use rayon::prelude::*;
-use serde_json::Value;
 use std::path::{Path, PathBuf};
-use std::sync::Mutex;
-use std::sync::atomic::{AtomicBool, Ordering};
-use std::time::{SystemTime, UNIX_EPOCH};
+use std::str::FromStr;
+use std::sync::atomic::{AtomicBool, AtomicUsize, Ordering};
+use std::sync::{Mutex, OnceLock, mpsc};
+use std::time::{Duration, SystemTime, UNIX_EPOCH};
 
 /// A share of a run's cells: the `index`-th (from 1) of `count`, dealt in turn.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -29,8 +28,31 @@ pub struct Part {
 }
 
 impl Part {
-    fn holds(part: Option<Self>, cell: usize) -> bool {
-        part.is_none_or(|p| cell % p.count == p.index - 1)
+    /// Cells are dealt in turn: dear ones lie side by side.
+    pub fn owner(cell: usize, count: usize) -> Self {
+        Self {
+            index: cell % count + 1,
+            count,
+        }
+    }
+}
+
+impl FromStr for Part {
+    type Err = &'static str;
+
+    fn from_str(text: &str) -> Result<Self, Self::Err> {
+        const ALLOWED: &str = "K/N with 1 ≤ K ≤ N ≤ 100000, for example 3/16";
+        let (index, count) = text.split_once('/').ok_or(ALLOWED)?;
+        let number = |s: &str| s.parse::<usize>().map_err(|_| ALLOWED);
+        let part = Self {
+            index: number(index)?,
+            count: number(count)?,
+        };
+        if (1..=part.count).contains(&part.index) && part.count <= 100_000 {
+            Ok(part)
+        } else {
+            Err(ALLOWED)
+        }
     }
 }
 
@@ -61,8 +83,10 @@ pub struct Job<'a> {
 
 /// Told what happens; called from several threads.
 pub trait Observer: Sync {
-    /// Work starts: cells in all, of these already finished.
-    fn begins(&self, cells: usize, finished: usize);
+    /// Work starts: cells in all, and what is finished of them.
+    fn begins(&self, cells: usize, earlier: &Standing);
+    /// Told twice a second while cells are searched: assessments of this sitting, those of unfinished cells too.
+    fn spent(&self, evaluations: u64);
     /// A file of an earlier sitting was damaged; its cell is searched again.
     fn damaged(&self, error: &RunError);
     /// A cell is on disk.
@@ -82,39 +106,6 @@ pub struct Finished {
     pub period: Option<PeriodRecord>,
     /// The folder, still locked.
     pub folder: RunFolder,
-}
-
-/// The area a hypervolume is measured from: the study's limit, or twice the largest inductors and switches.
-pub fn hypervolume_reference(study: &Study, setup: &Setup, space: &Space) -> HypervolumeReference {
-    let area_m2 = study.limits.area_m2.at_most.unwrap_or_else(|| {
-        let legs = f64::from(setup.legs);
-        let coil = match &setup.inductor {
-            Inductor::Spiral(process) => {
-                let side = space.diameter_m.as_ref().map_or(0.0, space::largest)
-                    + 2.0 * process.keep_out_m;
-                side * side
-            }
-            Inductor::Fixed {
-                area_base_m2,
-                area_slope_m2_h,
-                ..
-            } => {
-                let ohm = space
-                    .resistance_ohm
-                    .as_ref()
-                    .map_or(setup.network.antenna_resistance_ohm, space::largest);
-                area_base_m2
-                    + area_slope_m2_h * space::largest(&space.loaded_q) * ohm
-                        / setup.network.angular_frequency
-            }
-        };
-        let switches = f64::from(setup.stack)
-            * space::largest(&space.nmos_width_m)
-            * (1.0 + space::largest(&space.width_ratio))
-            * setup.layout.width_area_m;
-        2.0 * legs * (coil + switches)
-    });
-    HypervolumeReference { area_m2 }
 }
 
 fn now() -> u64 {
@@ -141,45 +132,62 @@ pub fn run(
     } else {
         RunFolder::create(job.out)?
     };
-    folder.write_json("run.json", &record)?;
+    let begun = folder.write_json("run.json", &record);
+    if job.resume {
+        begun?;
+    } else {
+        begun.map_err(RunError::before_work)?;
+    }
 
     let cells: Vec<Cell> = space::cells(space)
         .into_iter()
-        .filter(|c| Part::holds(job.part, c.index))
+        .filter(|c| job.part.is_none_or(|p| p == Part::owner(c.index, p.count)))
         .collect();
-    let missing: Vec<Cell> = cells
-        .iter()
-        .filter_map(|cell| match read_cell(job.out, cell.index) {
-            Ok(Some(_)) => None,
-            Ok(None) => Some(Ok(*cell)),
+    let mut missing = Vec::new();
+    let mut earlier = Standing::default();
+    for cell in &cells {
+        match read_cell(job.out, cell.index) {
+            Ok(Some(record)) => earlier.add(&record),
+            Ok(None) => missing.push(*cell),
             Err(error @ RunError::Damaged { .. }) => {
                 observer.damaged(&error);
-                Some(Ok(*cell))
+                missing.push(*cell);
             }
-            Err(error) => Some(Err(error)),
-        })
-        .collect::<Result<_, _>>()?;
-    let finished = cells.len() - missing.len();
-    observer.begins(cells.len(), finished);
-    search_missing(job, space, &record, &folder, &missing, stop, observer)?;
+            Err(error) => return Err(error),
+        }
+    }
+    observer.begins(cells.len(), &earlier);
+    let finished =
+        earlier.cells + search_missing(job, space, &record, &folder, &missing, stop, observer)?;
 
+    let whole = finished == cells.len();
+    record.ended_because = match (whole, job.part) {
+        (false, _) => "stopped",
+        (true, Some(_)) => "every cell of this part searched",
+        (true, None) => "every cell searched",
+    }
+    .into();
+    if !whole {
+        // First of all: a signal leaves a second, and many cells take longer to sum up.
+        record.ended_unix_s = Some(now());
+        record.cells_finished = finished;
+        folder.write_json("run.json", &record)?;
+    }
     let summary = summarise(
         &folder,
         cells.iter().map(|c| c.index),
         &record.objectives,
         &record.hypervolume_reference,
     )?;
-    close(&mut record, &summary, cells.len());
-    if summary.finished < cells.len() {
-        "stopped".clone_into(&mut record.ended_because);
-        folder.write_json("run.json", &record)?;
+    close(&mut record, &summary);
+    folder.write_json("run.json", &record)?;
+    if !whole {
         return Err(RunError::Stopped {
             path: job.out.to_owned(),
-            finished: summary.finished,
+            finished,
             cells: cells.len(),
         });
     }
-    folder.write_json("run.json", &record)?;
     if summary.front.is_empty() && job.part.is_none() {
         return Err(RunError::NothingFeasible);
     }
@@ -193,7 +201,7 @@ pub fn run(
     })
 }
 
-fn new_record(job: &Job<'_>, space: &Space) -> Result<RunRecord, RunError> {
+pub(super) fn new_record(job: &Job<'_>, space: &Space) -> Result<RunRecord, RunError> {
     let damaged = |e: serde_json::Error| RunError::Damaged {
         path: job.out.join("run.json"),
         reason: format!("cannot be written as JSON: {e}"),
@@ -229,65 +237,10 @@ fn new_record(job: &Job<'_>, space: &Space) -> Result<RunRecord, RunError> {
     })
 }
 
-/// Refuses to go on with a run of something else, and says what differs.
-fn same_run(path: &Path, there: &Value, here: &RunRecord) -> Result<(), RunError> {
-    let mut differences = Vec::new();
-    let here_value = serde_json::to_value(here).map_err(|e| RunError::Damaged {
-        path: path.join("run.json"),
-        reason: e.to_string(),
-    })?;
-    if there["version"] != here_value["version"] {
-        differences.push(format!(
-            "program version {} (this is {})",
-            there["version"], here_value["version"]
-        ));
-    }
-    for (what, hash) in [("study", "study_hash"), ("technology", "technology_hash")] {
-        if there[hash] != here_value[hash] {
-            let place = first_difference(what, &there[what], &here_value[what]);
-            differences.push(format!(
-                "another {what}{}",
-                place.map_or(String::new(), |p| format!(" ({p})"))
-            ));
-        }
-    }
-    if there["part"] != here_value["part"] {
-        differences.push(format!(
-            "part {} (this is {})",
-            there["part"], here_value["part"]
-        ));
-    }
-    if differences.is_empty() {
-        Ok(())
-    } else {
-        Err(RunError::Different {
-            path: path.to_owned(),
-            differences: differences.join(", "),
-        })
-    }
-}
+/// Time between two reports of what is spent.
+const TELL_EVERY: Duration = Duration::from_millis(500);
 
-fn first_difference(path: &str, a: &Value, b: &Value) -> Option<String> {
-    match (a, b) {
-        (Value::Object(x), Value::Object(y)) => x
-            .iter()
-            .filter(|(key, _)| path != "study" || key.as_str() != "technology")
-            .find_map(|(key, value)| {
-                first_difference(
-                    &format!("{path}.{key}"),
-                    value,
-                    y.get(key).unwrap_or(&Value::Null),
-                )
-            })
-            .or_else(|| {
-                let extra = y.keys().find(|k| !x.contains_key(*k))?;
-                Some(format!("{path}.{extra} is new"))
-            }),
-        _ if a == b => None,
-        _ => Some(format!("{path} was {a}, is {b}")),
-    }
-}
-
+/// Searches cells; returns how many it finished.
 fn search_missing(
     job: &Job<'_>,
     space: &Space,
@@ -296,9 +249,9 @@ fn search_missing(
     missing: &[Cell],
     stop: &AtomicBool,
     observer: &impl Observer,
-) -> Result<(), RunError> {
+) -> Result<usize, RunError> {
     if missing.is_empty() {
-        return Ok(());
+        return Ok(0);
     }
     let pool = rayon::ThreadPoolBuilder::new()
         .num_threads(record.threads)
@@ -308,31 +261,51 @@ fn search_missing(
             error: std::io::Error::other(e),
         })?;
     let failed: Mutex<Option<RunError>> = Mutex::new(None);
-    pool.install(|| {
-        let context = Context::new(job.setup, space, &record.objectives, record.seed);
-        // One cell at a time a thread: cells differ in cost, and a kill should lose as little as it can.
-        missing.par_iter().with_max_len(1).for_each(|cell| {
-            if stop.load(Ordering::Relaxed) {
-                return;
+    let finished = AtomicUsize::new(0);
+    // One cell at a time a thread: cells differ in cost, and a kill should lose as little as it can.
+    let search = |context: &Context<'_>, cell: &Cell| {
+        if stop.load(Ordering::Relaxed) {
+            return;
+        }
+        let Some(front) = search_cell(context, cell, stop) else {
+            return;
+        };
+        let cell_record = cell_record(record, front);
+        match folder.write_cell(&cell_record) {
+            Ok(()) => {
+                finished.fetch_add(1, Ordering::Relaxed);
+                observer.finished(&cell_record);
             }
-            let Some(front) = search_cell(&context, cell, stop) else {
-                return;
-            };
-            let cell_record = cell_record(record, front);
-            match folder.write_cell(&cell_record) {
-                Ok(()) => observer.finished(&cell_record),
-                Err(error) => {
-                    stop.store(true, Ordering::Relaxed);
-                    if let Ok(mut slot) = failed.lock() {
-                        slot.get_or_insert(error);
-                    }
+            Err(error) => {
+                stop.store(true, Ordering::Relaxed);
+                if let Ok(mut slot) = failed.lock() {
+                    slot.get_or_insert(error);
                 }
             }
+        }
+    };
+    let context = OnceLock::new();
+    let (working, ended) = mpsc::channel::<()>();
+    std::thread::scope(|scope| {
+        let told = &context;
+        scope.spawn(move || {
+            while ended.recv_timeout(TELL_EVERY) == Err(mpsc::RecvTimeoutError::Timeout) {
+                observer.spent(told.get().map_or(0, Context::spent));
+            }
         });
+        pool.install(|| {
+            let context = context
+                .get_or_init(|| Context::new(job.setup, space, &record.objectives, record.seed));
+            missing
+                .par_iter()
+                .with_max_len(1)
+                .for_each(|cell| search(context, cell));
+        });
+        drop(working);
     });
     match failed.into_inner() {
         Ok(Some(error)) => Err(error),
-        _ => Ok(()),
+        _ => Ok(finished.into_inner()),
     }
 }
 
@@ -360,18 +333,13 @@ fn cell_record(run: &RunRecord, front: CellFront) -> CellRecord {
     }
 }
 
-fn close(record: &mut RunRecord, summary: &Summary, cells: usize) {
+fn close(record: &mut RunRecord, summary: &Summary) {
     record.ended_unix_s = Some(now());
     record.cells_finished = summary.finished;
     record.evaluations = summary.evaluations;
     record.front_size = summary.front.len();
     record.hypervolume = summary.hypervolume;
     record.residuals = summary.residuals;
-    record.ended_because = if summary.finished == cells && record.part.is_some() {
-        "every cell of this part searched".into()
-    } else {
-        "every cell searched".into()
-    };
 }
 
 /// What two figures show: losses against width around the most efficient design, and one period of it.
@@ -417,62 +385,4 @@ fn illustrations(
         folder.write_json("figures/period.json", period)?;
     }
     Ok((Some(sweep), period))
-}
-
-/// Makes one run folder of parts: every part of the same run, every cell there and sound.
-///
-/// # Errors
-/// [`RunError::Parts`] naming what is missing or different, and all of [`run`].
-pub fn join(
-    job: &Job<'_>,
-    parts: &[PathBuf],
-    observer: &impl Observer,
-) -> Result<Finished, RunError> {
-    let space = job.study.space.as_ref().ok_or(RunError::NoSpace)?;
-    let wanted = new_record(job, space)?;
-    for part in parts {
-        let mut there = read_run(part)?;
-        there["part"] = Value::Null;
-        same_run(part, &there, &wanted)?;
-    }
-    let cells = space::cells(space);
-    let mut missing = Vec::new();
-    let mut records = Vec::with_capacity(cells.len());
-    for cell in &cells {
-        let mut found = None;
-        for part in parts {
-            if read_cell(part, cell.index)?.is_some() {
-                found = Some(part.join(cell_name(cell.index)));
-                break;
-            }
-        }
-        match found {
-            Some(path) => records.push(path),
-            None => missing.push(cell.index.to_string()),
-        }
-    }
-    if !missing.is_empty() {
-        return Err(RunError::Parts(format!(
-            "{} of {} cells are in none of the parts: {}; finish those parts first",
-            missing.len(),
-            cells.len(),
-            missing.join(", ")
-        )));
-    }
-    let folder = RunFolder::create(job.out)?;
-    folder.write_json("run.json", &wanted)?;
-    for (cell, path) in cells.iter().zip(&records) {
-        let bytes = std::fs::read(path).map_err(|error| RunError::Io {
-            path: path.clone(),
-            error,
-        })?;
-        folder.write(&cell_name(cell.index), &bytes)?;
-    }
-    drop(folder);
-    let job = Job {
-        resume: true,
-        part: None,
-        ..*job
-    };
-    run(&job, &AtomicBool::new(false), observer)
 }

@@ -6,9 +6,12 @@ use super::RunError;
 use super::folder::{RunFolder, read_cell};
 use super::records::{CellRecord, DesignList, DesignRecord, HypervolumeReference, Residuals};
 use super::table::csv;
+use crate::evaluate::Setup;
 use crate::numerics::hypervolume::hypervolume;
 use crate::search::front::{Costs, costs, non_dominated};
-use crate::study::Objective;
+use crate::search::space;
+use crate::study::{Objective, Space, Study};
+use crate::technology::Inductor;
 use serde::Serialize;
 
 /// Square millimetres in a square metre: the unit of area in a hypervolume.
@@ -48,6 +51,31 @@ pub struct Summary {
     pub hypervolume: f64,
     /// Spread of the residuals of all cells' points.
     pub residuals: Option<Residuals>,
+}
+
+/// What finished cells amount to, for progress.
+#[derive(Debug, Clone, Copy, PartialEq, Default)]
+pub struct Standing {
+    /// How many.
+    pub cells: usize,
+    /// Their assessments.
+    pub evaluations: u64,
+    /// None without a design.
+    pub best_efficiency: Option<f64>,
+}
+
+impl Standing {
+    /// With one more cell.
+    pub fn add(&mut self, cell: &CellRecord) {
+        self.cells += 1;
+        self.evaluations += cell.evaluations;
+        let efficiency = cell
+            .designs
+            .iter()
+            .filter_map(|d| d.evaluation.figures.as_ref())
+            .map(|f| f.efficiency);
+        self.best_efficiency = efficiency.chain(self.best_efficiency).reduce(f64::max);
+    }
 }
 
 /// Costs of a record by the objectives in play.
@@ -94,6 +122,39 @@ pub fn front_hypervolume(
     hypervolume(&points, &[0.0, 0.0, reference.area_m2 * MM2])
 }
 
+/// The area a hypervolume is measured from: the study's limit, or twice the largest inductors and switches.
+pub fn hypervolume_reference(study: &Study, setup: &Setup, space: &Space) -> HypervolumeReference {
+    let area_m2 = study.limits.area_m2.at_most.unwrap_or_else(|| {
+        let legs = f64::from(setup.legs);
+        let coil = match &setup.inductor {
+            Inductor::Spiral(process) => {
+                let side = space.diameter_m.as_ref().map_or(0.0, space::largest)
+                    + 2.0 * process.keep_out_m;
+                side * side
+            }
+            Inductor::Fixed {
+                area_base_m2,
+                area_slope_m2_h,
+                ..
+            } => {
+                let ohm = space
+                    .resistance_ohm
+                    .as_ref()
+                    .map_or(setup.network.antenna_resistance_ohm, space::largest);
+                area_base_m2
+                    + area_slope_m2_h * space::largest(&space.loaded_q) * ohm
+                        / setup.network.angular_frequency
+            }
+        };
+        let switches = f64::from(setup.stack)
+            * space::largest(&space.nmos_width_m)
+            * (1.0 + space::largest(&space.width_ratio))
+            * setup.layout.width_area_m;
+        2.0 * legs * (coil + switches)
+    });
+    HypervolumeReference { area_m2 }
+}
+
 /// Reads every cell of `cells`, in order, writes `cells.csv`, `front.csv` and `front.json`.
 ///
 /// # Errors
@@ -104,9 +165,10 @@ pub fn summarise(
     objectives: &[Objective],
     reference: &HypervolumeReference,
 ) -> Result<Summary, RunError> {
-    /// Designs gathered before the front is filtered anew.
-    const BATCH: usize = 20_000;
+    /// Designs gathered beyond the front's own number before it is filtered anew.
+    const BATCH: usize = 1_000;
     let mut front: Vec<DesignRecord> = Vec::new();
+    let mut kept = 0;
     let mut lines = Vec::new();
     let mut residuals = Vec::new();
     let mut evaluations = 0;
@@ -118,8 +180,9 @@ pub fn summarise(
         residuals.extend(record.designs.iter().map(|d| (d.residual, d.certified)));
         lines.push(line(&record));
         front.extend(record.designs);
-        if front.len() > BATCH {
+        if front.len() > 2 * kept + BATCH {
             front = filtered(objectives, front);
+            kept = front.len();
         }
     }
     let mut front = filtered(objectives, front);

@@ -4,8 +4,10 @@ pub mod cell;
 pub mod front;
 pub mod problem;
 pub mod quadratic;
+mod reach;
 pub mod solver;
 pub mod space;
+mod tracer;
 
 use crate::evaluate::Setup;
 use crate::study::{Objective, Range, Space};
@@ -15,6 +17,28 @@ use problem::{CoilSource, SliceProblem};
 use quadratic::Row;
 use space::Cell;
 use std::collections::BTreeMap;
+use std::sync::atomic::{AtomicU64, Ordering};
+
+/// How hard a cell is searched.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub struct Effort {
+    /// Levels of the targets along output power and along area.
+    pub levels: usize,
+    /// Points drawn to choose a slice's starts from.
+    pub samples: usize,
+    /// Starts of a slice in the primary objective; its other extremes have one, and those of its neighbours.
+    pub starts: usize,
+}
+
+impl Default for Effort {
+    fn default() -> Self {
+        Self {
+            levels: 26,
+            samples: 32,
+            starts: 3,
+        }
+    }
+}
 
 /// What all cells of a run share.
 #[derive(Debug)]
@@ -27,7 +51,11 @@ pub struct Context<'a> {
     pub objectives: &'a [Objective],
     /// Seed of the restarts.
     pub seed: u64,
+    /// How hard each cell is searched.
+    pub effort: Effort,
     tables: BTreeMap<u32, SpiralTable>,
+    /// Assessments of all cells, the unfinished too; for progress alone.
+    spent: AtomicU64,
 }
 
 /// Narrowest trace tabulated for the direct network, whose trace is a result, m.
@@ -58,8 +86,19 @@ impl<'a> Context<'a> {
             space,
             objectives,
             seed,
+            effort: Effort::default(),
             tables,
+            spent: AtomicU64::new(0),
         }
+    }
+
+    /// Assessments so far, those of unfinished cells too.
+    pub fn spent(&self) -> u64 {
+        self.spent.load(Ordering::Relaxed)
+    }
+
+    fn count(&self, assessments: u64) {
+        self.spent.fetch_add(assessments, Ordering::Relaxed);
     }
 
     /// The inductor of a slice with these turns; `None` when no such spiral closes.
@@ -71,13 +110,13 @@ impl<'a> Context<'a> {
     /// Start `number` of a slice: the middle, then points drawn by seed, cell, slice and number alone.
     fn start(&self, cell: &Cell, slice: usize, number: usize, axes: usize) -> Row {
         if number == 0 {
-            return cell::start_point(axes, || 0.5);
+            return tracer::start_point(axes, || 0.5);
         }
         let mut state = self.seed;
         for part in [cell.index, slice, number] {
             state = mixed(state ^ part as u64);
         }
-        cell::start_point(axes, || {
+        tracer::start_point(axes, || {
             state = mixed(state);
             // Away from the walls: 0.1 to 0.9.
             0.1 + 0.8 * (state >> 11) as f64 / (1u64 << 53) as f64

@@ -43,13 +43,15 @@ pub enum CoilSource<'a> {
     Spiral(&'a SpiralProcess, &'a SpiralTable, u32),
 }
 
-/// Logarithms of efficiency, output power and area with gradients, and the limits.
+/// Logarithms of efficiency, output power and area, and the limits.
 #[derive(Debug, Clone)]
-pub struct Merits {
+pub struct Merits<S> {
     /// ln efficiency, ln W, ln m², in the order of [`Objective`].
-    pub objectives: [Linear; 3],
+    pub objectives: [S; 3],
     /// Each ≥ 0.
-    pub limits: ArrayVec<Linear, MOST_CONSTRAINTS>,
+    pub limits: ArrayVec<S, MOST_CONSTRAINTS>,
+    /// Drain voltages counted as still to swing when N and P turn on, fractions of the supply.
+    pub residual: [S; 2],
 }
 
 /// A slice with a goal.
@@ -91,52 +93,49 @@ impl<'a> SliceProblem<'a> {
         self.slice.axes.len()
     }
 
-    /// Values and gradients of all objectives and limits.
+    /// Objectives and limits of the design at `places` of the axes, without gradients.
     ///
     /// # Errors
-    /// Why the design at this point cannot exist.
-    pub fn merits(&self, point: &Row) -> Result<Merits, Impossible> {
-        match self.size() {
-            0..=4 => self.merits_of::<4>(point),
-            5..=8 => self.merits_of::<8>(point),
-            _ => self.merits_of::<MOST_VARIABLES>(point),
-        }
+    /// Why the design cannot exist.
+    pub fn merits(&self, places: &[f64]) -> Result<Merits<f64>, Impossible> {
+        self.merits_at(&self.slice.values(|i| places[i]), None)
     }
 
-    fn merits_of<const N: usize>(&self, point: &Row) -> Result<Merits, Impossible> {
+    /// The same with gradients.
+    fn merits_with_gradients<const N: usize>(
+        &self,
+        point: &Row,
+    ) -> Result<Merits<Dual<N>>, Impossible> {
         let axes = self.axes();
         let values = self.slice.values(|i| Dual::<N>::variable(point[i], i));
-        let residual: [Dual<N>; 2] = [0, 1].map(|k| Dual::variable(point[axes + k], axes + k));
-        self.merits_at(&values, residual)
+        let residual = [0, 1].map(|k| Dual::variable(point[axes + k], axes + k));
+        self.merits_at(&values, Some(residual))
     }
 
-    /// The same for any scalar; the residuals are fractions of the supply.
-    fn merits_at<const N: usize>(
+    /// For any scalar; the residuals are those of the steady state or bounds on them, fractions of the supply.
+    fn merits_at<S: Scalar>(
         &self,
-        values: &Values<Dual<N>>,
-        residual: [Dual<N>; 2],
-    ) -> Result<Merits, Impossible> {
+        values: &Values<S>,
+        residual: Option<[S; 2]>,
+    ) -> Result<Merits<S>, Impossible> {
         let mut limits = ArrayVec::new();
-        let mut push = |margin: Dual<N>, reserve: f64| {
-            limits.push(linear(margin - reserve));
-        };
+        let mut push = |margin: S, reserve: f64| limits.push(margin - reserve);
         let sizing = values.sizing(self.slice.stages);
         let coil = coil(self.setup, &self.coil, values)?;
-        let core = core(self.setup, &sizing, &coil)?;
+        let core = core(self.setup, &sizing, &coil, self.setup.limited_harmonics())?;
+        let found = core.period.residual_v.map(|v| v / sizing.supply_v);
+        let residual = residual.unwrap_or(found.map(S::positive_part));
         let residual_v = residual.map(|r| r * sizing.supply_v);
         let p = performance(self.setup, &sizing, &coil, &core, residual_v)?;
         for m in margins(self.setup, &sizing, &core, &p) {
             push(m.margin, LIMIT_RESERVE);
         }
         for k in 0..2 {
-            push(
-                residual[k] - core.period.residual_v[k] / sizing.supply_v,
-                0.0,
-            );
+            push(residual[k] - found[k], 0.0);
         }
         let network = &core.circuit.network;
         let series_reactance =
-            Dual::one() / (network.series_capacitance_f * self.setup.network.angular_frequency);
+            S::one() / (network.series_capacitance_f * self.setup.network.angular_frequency);
         push(
             series_reactance / network.optimum_resistance_ohm - 0.02,
             LIMIT_RESERVE,
@@ -160,9 +159,9 @@ impl<'a> SliceProblem<'a> {
             push(-trace / widest + 1.0, 0.0);
         }
         Ok(Merits {
-            objectives: [p.efficiency, p.output_power_w, p.area.total_m2()]
-                .map(|figure| linear(figure.ln())),
+            objectives: [p.efficiency, p.output_power_w, p.area.total_m2()].map(S::ln),
             limits,
+            residual,
         })
     }
 }
@@ -304,34 +303,40 @@ impl Constrained for SliceProblem<'_> {
     }
 
     fn assess(&self, point: &Row) -> Option<Assessment> {
-        let merits = self.merits(point).ok()?;
-        let [efficiency, power, area] = merits.objectives;
-        let mut constraints = merits.limits;
-        if let Some(least) = self.goal.least_ln_power {
-            constraints.push(Linear {
-                value: power.value - least,
-                gradient: power.gradient,
-            });
+        match self.size() {
+            0..=4 => self.assess_in::<4>(point),
+            5..=8 => self.assess_in::<8>(point),
+            _ => self.assess_in::<MOST_VARIABLES>(point),
         }
-        if let Some(most) = self.goal.most_ln_area {
-            constraints.push(negated(area, most));
-        }
-        let cost = match self.goal.best {
-            Objective::Efficiency => negated(efficiency, 0.0),
-            Objective::OutputPower => negated(power, 0.0),
-            Objective::Area => area,
-        };
-        let finite = cost.value.is_finite()
-            && constraints.iter().all(|c| c.value.is_finite())
-            && cost.gradient.iter().all(|g| g.is_finite());
-        finite.then_some(Assessment { cost, constraints })
     }
 }
 
-/// `offset − f`.
-fn negated(f: Linear, offset: f64) -> Linear {
-    Linear {
-        value: offset - f.value,
-        gradient: f.gradient.map(|g| -g),
+impl SliceProblem<'_> {
+    fn assess_in<const N: usize>(&self, point: &Row) -> Option<Assessment> {
+        let Merits {
+            objectives, limits, ..
+        } = self.merits_with_gradients::<N>(point).ok()?;
+        let [efficiency, power, area] = objectives;
+        let cost = match self.goal.best {
+            Objective::Efficiency => -efficiency,
+            Objective::OutputPower => -power,
+            Objective::Area => area,
+        };
+        let targets = [
+            self.goal.least_ln_power.map(|least| power - least),
+            self.goal.most_ln_area.map(|most| -area + most),
+        ];
+        let mut assessment = Assessment {
+            cost: linear(cost),
+            constraints: ArrayVec::new(),
+            merits: objectives.map(Scalar::value),
+        };
+        for constraint in limits.iter().chain(targets.iter().flatten()) {
+            assessment.constraints.push(linear(*constraint));
+        }
+        let finite = assessment.cost.value.is_finite()
+            && assessment.constraints.iter().all(|c| c.value.is_finite())
+            && assessment.cost.gradient.iter().all(|g| g.is_finite());
+        finite.then_some(assessment)
     }
 }

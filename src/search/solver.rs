@@ -12,6 +12,23 @@ use arrayvec::ArrayVec;
 /// Most general constraints of a problem.
 pub const MOST_CONSTRAINTS: usize = 28;
 
+/// Limits broken by more than `FAR`, which in so many models running are not narrowed to a part `NARROWED`, have no point
+/// in common near here. A model in which they contradict each other counts for more.
+const PATIENCE: u32 = 20;
+const CONTRADICTION: u32 = 6;
+const NARROWED: f64 = 0.8;
+const FAR: f64 = 1e-3;
+
+/// Violation under which a point counts as feasible.
+pub const FEASIBLE: f64 = 1e-7;
+
+/// A step need only be better than the worst of this many points before and the present one (Grippo, Lampariello and
+/// Lucidi 1986): asked to be better than the present one, steps along curved limits are cut short and zigzag.
+const MEMORY: usize = 3;
+
+/// Lengths tried along a step: the last is about 1e-5 of it.
+const MOST_TRIALS: usize = 13;
+
 /// A function's value and gradient.
 #[derive(Debug, Clone, Copy)]
 pub struct Linear {
@@ -28,6 +45,8 @@ pub struct Assessment {
     pub cost: Linear,
     /// Each to be ≥ 0, scaled to order 1.
     pub constraints: ArrayVec<Linear, MOST_CONSTRAINTS>,
+    /// What the problem's owner wants to know of the point; the solver only carries it along.
+    pub merits: [f64; 3],
 }
 
 /// A smooth problem in a box.
@@ -79,6 +98,10 @@ pub struct SequentialQuadratic {
     penalties: ArrayVec<f64, MOST_CONSTRAINTS>,
     tolerance: f64,
     resets: u32,
+    least_violation: f64,
+    waited: u32,
+    /// The last points left behind, newest last.
+    passed: ArrayVec<Assessment, MEMORY>,
 }
 
 /// The identity.
@@ -104,6 +127,9 @@ impl SequentialQuadratic {
             penalties: ArrayVec::new(),
             tolerance,
             resets: 0,
+            least_violation: f64::INFINITY,
+            waited: 0,
+            passed: ArrayVec::new(),
         }
     }
 
@@ -248,12 +274,19 @@ impl SequentialQuadratic {
         self.violation = violation(&a);
         self.residual = self.measure(n, owner, &a, &minimum);
         let length: f64 = step[..n].iter().fold(0.0, |m, s| m.max(s.abs()));
-        if self.residual <= self.tolerance {
+        if self.residual <= self.tolerance && self.violation <= FEASIBLE {
             self.ended = Ended::Converged;
             self.assessment = Some(a);
             return Ok(());
         }
-        if relaxed < 1.0 && length < 1e-9 && self.violation > self.tolerance {
+        if self.violation < NARROWED * self.least_violation {
+            self.least_violation = self.violation;
+            self.waited = 0;
+        } else if self.violation > FAR {
+            self.waited += if relaxed < 1.0 { CONTRADICTION } else { 1 };
+        }
+        let settled = relaxed < 1.0 && length < 1e-9 && self.violation > self.tolerance;
+        if settled || self.waited >= PATIENCE {
             self.ended = Ended::Infeasible;
             self.assessment = Some(a);
             return Ok(());
@@ -271,6 +304,11 @@ impl SequentialQuadratic {
             }
         }
         let merit = self.merit(&a);
+        let reference = self
+            .passed
+            .iter()
+            .map(|p| self.merit(p))
+            .fold(merit, f64::max);
         let weighted: f64 = a
             .constraints
             .iter()
@@ -279,16 +317,16 @@ impl SequentialQuadratic {
             .sum();
         let descent = (dot(n, &a.cost.gradient, &step) - relaxed * weighted).min(0.0);
         let mut factor = 1.0;
-        for trial in 0..30 {
+        for trial in 0..MOST_TRIALS {
             let Some(owner) = problem.problem.as_ref() else {
                 return Err(Error::msg("the problem is gone"));
             };
             let point = self.moved(owner, &step, factor);
             let assessed = Self::assess(problem, &point)?;
             if let Some(next) = assessed {
-                let enough = merit + 1e-4 * factor * descent + 1e-15 * merit.abs();
+                let enough = reference + 1e-4 * factor * descent + 1e-15 * merit.abs();
                 if self.merit(&next) <= enough {
-                    self.accept(n, point, &a, next);
+                    self.accept(n, point, a, next);
                     return Ok(());
                 }
                 if trial == 0
@@ -313,12 +351,16 @@ impl SequentialQuadratic {
         Ok(())
     }
 
-    fn accept(&mut self, n: usize, point: Row, before: &Assessment, after: Assessment) {
+    fn accept(&mut self, n: usize, point: Row, before: Assessment, after: Assessment) {
         let mut step = [0.0; MOST_VARIABLES];
         for i in 0..n {
             step[i] = point[i] - self.point[i];
         }
-        self.learn(n, &step, before, &after);
+        self.learn(n, &step, &before, &after);
+        if self.passed.is_full() {
+            self.passed.pop_at(0);
+        }
+        self.passed.push(before);
         self.point = point;
         self.assessment = Some(after);
     }
@@ -345,7 +387,7 @@ impl SequentialQuadratic {
         if let Some(next) = Self::assess(problem, &point)?
             && self.merit(&next) <= enough
         {
-            self.accept(n, point, a, next);
+            self.accept(n, point, a.clone(), next);
             return Ok(true);
         }
         Ok(false)
@@ -403,6 +445,9 @@ impl<O: Constrained> Solver<O, SolverState> for SequentialQuadratic {
         problem: &mut Problem<O>,
         state: SolverState,
     ) -> Result<(SolverState, Option<KV>), Error> {
+        if let Some(owner) = problem.problem.as_ref() {
+            self.point = self.moved(owner, &[0.0; MOST_VARIABLES], 0.0);
+        }
         let point = self.point;
         self.assessment = Self::assess(problem, &point)?;
         if self.assessment.is_none() {
@@ -492,6 +537,7 @@ mod tests {
                     ],
                 ),
                 constraints: ArrayVec::new(),
+                merits: [0.0; 3],
             })
         };
         let free = run(Toy(2, (-2.0, 2.0), valley), &[-1.2, 1.0]);
@@ -528,6 +574,7 @@ mod tests {
                     &[d * (2.0 * a + b + c), a * d, a * d + 1.0, a * (a + b + c)],
                 ),
                 constraints,
+                merits: [0.0; 3],
             })
         };
         let solved = run(Toy(4, (1.0, 5.0), problem), &[1.0, 5.0, 5.0, 1.0]);
@@ -546,6 +593,7 @@ mod tests {
             Some(Assessment {
                 cost: linear(p[0] * p[0], &[2.0 * p[0]]),
                 constraints,
+                merits: [0.0; 3],
             })
         };
         let solved = run(Toy(1, (0.0, 1.0), problem), &[0.5]);

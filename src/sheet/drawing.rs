@@ -243,27 +243,28 @@ fn labels(body: &mut String, view: View, plan: &Floorplan) {
         let (w, h) = (view.scale * block.width, view.scale * block.height);
         let length = |words: &str, size: f64| 0.58 * size * words.chars().count() as f64;
         let wide = length(&block.label, TEXT).max(length(&block.detail, DETAIL));
-        let x = view.x(block.x + 0.5 * block.width);
+        let middle = view.x(block.x + 0.5 * block.width);
         let tall = TEXT + DETAIL + 8.0;
-        let top = if w > wide + 8.0 && h > tall + 8.0 {
+        // Below they begin with the block: the spiral's keep-out is on its other side.
+        let (x, top, anchor) = if w > wide + 8.0 && h > tall + 8.0 {
             let top = view.y(block.y + 0.5 * block.height) - 0.5 * tall;
             let _ = writeln!(
                 body,
                 "<rect x=\"{:.1}\" y=\"{top:.1}\" width=\"{:.1}\" height=\"{tall:.1}\" fill=\"#fff\" fill-opacity=\"0.85\"/>",
-                x - 0.5 * wide - 4.0,
+                middle - 0.5 * wide - 4.0,
                 wide + 8.0,
             );
-            top
+            (middle, top, "middle")
         } else {
-            view.y(block.bottom()) + 3.0
+            (view.x(block.x), view.y(block.bottom()) + 3.0, "start")
         };
-        text(body, x, top + TEXT, TEXT, "middle", &block.label);
+        text(body, x, top + TEXT, TEXT, anchor, &block.label);
         text(
             body,
             x,
             top + TEXT + DETAIL + 3.0,
             DETAIL,
-            "middle",
+            anchor,
             &block.detail,
         );
     }

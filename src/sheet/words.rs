@@ -145,7 +145,9 @@ pub fn to_be_checked() -> Vec<String> {
         "Extracted simulation with the foundry's models over process, supply and temperature.",
         "The spiral with a field solver, leads and neighbouring metal in it.",
         "Electrostatic discharge protection of every pad; what it adds to the antenna's node.",
-        "Emissions, harmonics and exposure by licensed radio practice: the figures here prove no compliance.",
+        "RF burns and exposure near the antenna and its feed, on the bench too, by the local safety code.",
+        "Emissions, harmonics and the right to transmit by the local spectrum rules and licensed radio practice: the \
+         figures here prove no compliance.",
     ]
     .map(str::to_owned)
     .to_vec()

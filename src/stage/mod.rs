@@ -92,6 +92,15 @@ pub enum Impossible {
         /// V_s/V.
         fraction: f64,
     },
+    /// A switch that passes no current to speak of, as a cascode whose gate drive the drop across its switch takes.
+    #[error(
+        "cut_off: a switch never turns on: its resistance is {resistance_ohm:.3e} ohm, below 1e9 ohm is needed; take \
+         more swing or wider devices"
+    )]
+    CutOff {
+        /// R_n or R_p, Ω.
+        resistance_ohm: f64,
+    },
     /// A value that this kind of stage needs is not given.
     #[error("missing: this stage needs a value for `{key}`")]
     Missing {

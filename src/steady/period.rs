@@ -16,6 +16,12 @@ use std::f64::consts::TAU;
 /// Highest harmonic reported.
 pub const HARMONICS: usize = 5;
 
+/// Which harmonics to work out, the carrier first.
+pub type Harmonics = [bool; HARMONICS];
+
+/// Every harmonic reported.
+pub const ALL_HARMONICS: Harmonics = [true; HARMONICS];
+
 /// Means over a period. Powers count all legs.
 #[derive(Debug, Clone, Copy)]
 pub struct PeriodFigures<S> {
@@ -29,7 +35,7 @@ pub struct PeriodFigures<S> {
     pub current_squared_a2: S,
     /// `⟨v_o²⟩`, V².
     pub output_squared_v2: S,
-    /// Amplitudes `|V_ok|` at the antenna, k = 1..=5, V; zero for even k with two legs.
+    /// Amplitudes `|V_ok|` at the antenna, k = 1..=5, V; zero for even k with two legs and where not asked for.
     pub harmonic_v: [S; HARMONICS],
     /// Drain voltage yet to swing when N and P turn on, V, signed: v_d and V_DD − v_d.
     pub residual_v: [S; 2],
@@ -93,7 +99,7 @@ impl<'m, S: Scalar, const N: usize> Solved<'m, S, N> {
         let distinct = sequence.len().min(3);
         for &(switches, duration) in &sequence[..distinct] {
             let a: Matrix<S, N> = circuit.matrix(switches);
-            maps[switches as usize].fill(&a.map(|row| row.map(|entry| entry * duration)))?;
+            maps[switches as usize].fill(&a, duration)?;
         }
         let maps: &'m Maps<S, N> = maps;
         let mut state = start_state(circuit, &sequence, maps)?;
@@ -133,17 +139,18 @@ fn total<S: Scalar, const N: usize>(a: &Column<S, N>, b: &Column<S, N>) -> Colum
     c
 }
 
-/// Solves `(M − Φ)x₀ = γ`, M the identity or, with two legs, the mirror of half a period.
+/// Solves `(M − Φ)x₀ = γ`, M the identity or, with two legs, the mirror of half a period. Derivatives follow from the
+/// same matrix: with x₀ held still the end of the (half) period moves by what has to be made up.
 fn start_state<S: Scalar, const N: usize>(
     circuit: &Circuit<S>,
     sequence: &[(Switches, S)],
     maps: &Maps<S, N>,
 ) -> Option<Column<S, N>> {
-    let mut map: Matrix<S, N> = identity();
-    let mut offset = [S::zero(); N];
+    let mut map: Matrix<f64, N> = identity();
+    let mut offset = [0.0; N];
     for &(switches, _) in sequence {
-        let f = maps[switches as usize].less_identity();
-        let rest: Column<S, N> = circuit.rest(switches);
+        let f = maps[switches as usize].whole();
+        let rest = circuit.rest::<N>(switches).map(S::value);
         offset = total(&apply(f, &difference(&offset, &rest)), &offset);
         let mut next = product(f, &map);
         for i in 0..N {
@@ -153,11 +160,11 @@ fn start_state<S: Scalar, const N: usize>(
         }
         map = next;
     }
-    let mut mirror = identity();
+    let mut mirror: Matrix<f64, N> = identity();
     if circuit.legs == 2 {
         mirror.swap(0, 1);
         for (i, row) in mirror.iter_mut().enumerate().skip(2) {
-            row[i] = S::constant(-1.0);
+            row[i] = -1.0;
         }
     }
     for i in 0..N {
@@ -166,20 +173,37 @@ fn start_state<S: Scalar, const N: usize>(
         }
     }
     let start = solve(mirror, offset)?;
-    start.iter().all(|x| x.value().is_finite()).then_some(start)
+    if !start.iter().all(|x| x.is_finite()) {
+        return None;
+    }
+    let still = start.map(S::constant);
+    if !S::MOVES {
+        return Some(still);
+    }
+    let mut state = still;
+    for &(switches, _) in sequence {
+        let rest = circuit.rest(switches);
+        let from_rest = difference(&state, &rest);
+        let f = maps[switches as usize].less_identity();
+        state = total(&advanced(f, &from_rest), &rest);
+    }
+    Some(total(&still, &solve(mirror, state.map(S::movement))?))
 }
 
-/// The figures of one period; `None` when the steady state leaves the floating-point range.
-pub fn figures<S: Scalar>(circuit: &Circuit<S>) -> Option<PeriodFigures<S>> {
+/// The figures of one period with the harmonics `wanted`; `None` when the steady state leaves the floating-point range.
+pub fn figures<S: Scalar>(circuit: &Circuit<S>, wanted: Harmonics) -> Option<PeriodFigures<S>> {
     match circuit.size() {
-        3 => figures_of::<S, 3>(circuit),
-        4 => figures_of::<S, 4>(circuit),
-        5 => figures_of::<S, 5>(circuit),
+        3 => figures_of::<S, 3>(circuit, wanted),
+        4 => figures_of::<S, 4>(circuit, wanted),
+        5 => figures_of::<S, 5>(circuit, wanted),
         _ => None,
     }
 }
 
-fn figures_of<S: Scalar, const N: usize>(circuit: &Circuit<S>) -> Option<PeriodFigures<S>> {
+fn figures_of<S: Scalar, const N: usize>(
+    circuit: &Circuit<S>,
+    wanted: Harmonics,
+) -> Option<PeriodFigures<S>> {
     let mut room = maps();
     let solved = Solved::<S, N>::new(circuit, &mut room)?;
     let order = circuit.order();
@@ -196,19 +220,31 @@ fn figures_of<S: Scalar, const N: usize>(circuit: &Circuit<S>) -> Option<PeriodF
     let mut output_squared = S::zero();
     let mut dead_times = [None, None];
     let mut residual_v = [S::zero(); 2];
-    for (index, phase) in solved.phases.iter().enumerate() {
-        let moment = solved.exponential(phase).second_moment(&phase.from_rest);
+    // Phases of one kind share their exponential and last equally long: one moment serves them.
+    for switches in [Switches::PullUp, Switches::Open, Switches::PullDown] {
+        let arcs: arrayvec::ArrayVec<_, 2> = solved
+            .phases
+            .iter()
+            .filter(|p| p.switches == switches)
+            .map(|p| [&p.from_rest, &p.to_rest])
+            .collect();
+        let Some(phase) = solved.phases.iter().find(|p| p.switches == switches) else {
+            continue;
+        };
+        let moment = solved.exponential(phase).second_moment(&arcs);
         let current = moment[i][i] * phase.duration_s / (reference * reference);
         current_squared += current;
         if let Some(o) = order.output {
             output_squared += moment[o][o] * phase.duration_s;
         }
         for leg in 0..legs {
-            if let Some(r) = circuit.holding_ohm(phase.switches, leg) {
+            if let Some(r) = circuit.holding_ohm(switches, leg) {
                 dissipation += moment[leg][leg] * phase.duration_s / r;
                 conduction += r * current;
             }
         }
+    }
+    for (index, phase) in solved.phases.iter().enumerate() {
         match phase.switches {
             // ∫i_sw over the phase is what its capacitors took: C_d Δv_d + C_s Δv_c.
             Switches::PullUp => {
@@ -225,12 +261,12 @@ fn figures_of<S: Scalar, const N: usize>(circuit: &Circuit<S>) -> Option<PeriodF
             // With two legs the drain of leg 2 now moves as that of leg 1 half a period later.
             Switches::Open if legs == 2 => {
                 for (leg, slot) in dead_times.iter_mut().enumerate() {
-                    *slot = Some(rails::span(solved.exponential(phase), phase, leg, i));
+                    *slot = Some(rails::span(solved.exponential(phase), phase, leg, i)?);
                 }
             }
             Switches::Open => {
                 dead_times[usize::from(index > 1)] =
-                    Some(rails::span(solved.exponential(phase), phase, 0, i));
+                    Some(rails::span(solved.exponential(phase), phase, 0, i)?);
             }
         }
     }
@@ -244,7 +280,7 @@ fn figures_of<S: Scalar, const N: usize>(circuit: &Circuit<S>) -> Option<PeriodF
         conduction_w: conduction * halves,
         current_squared_a2: current_squared * halves,
         output_squared_v2: output_squared * halves,
-        harmonic_v: harmonics(circuit, &solved),
+        harmonic_v: harmonics(circuit, &solved, wanted),
         residual_v,
         dead_times,
     })
@@ -255,6 +291,7 @@ fn figures_of<S: Scalar, const N: usize>(circuit: &Circuit<S>) -> Option<PeriodF
 fn harmonics<S: Scalar, const N: usize>(
     circuit: &Circuit<S>,
     solved: &Solved<'_, S, N>,
+    wanted: Harmonics,
 ) -> [S; HARMONICS] {
     let omega = TAU / circuit.period_s;
     // e^{−jωt} at the phase boundaries; higher harmonics are its powers.
@@ -276,7 +313,7 @@ fn harmonics<S: Scalar, const N: usize>(
                 *power = [power[0] * once[0], power[1] * once[1]];
             }
         }
-        if circuit.legs == 2 && k.is_multiple_of(2) {
+        if !wanted[slot] || (circuit.legs == 2 && k.is_multiple_of(2)) {
             continue;
         }
         let frequency = k as f64 * omega;

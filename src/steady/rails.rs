@@ -18,36 +18,36 @@ pub struct DeadTimeSpan<S> {
 /// times the carrier at most, so a piece holds one turn at the most.
 const PIECES: usize = 8;
 
-/// The span of the drain voltage of `leg` over an open phase; `current` is the state's index of the loop current.
+/// The span of the drain voltage of `leg` over an open phase; `current` is the state's index of the loop current. `None`
+/// outside the floating-point range.
 pub(super) fn span<S: Scalar, const N: usize>(
     exponential: &Exponential<S, N>,
     phase: &Phase<S, N>,
     leg: usize,
     current: usize,
-) -> DeadTimeSpan<S> {
+) -> Option<DeadTimeSpan<S>> {
     // An open phase rests at zero, so states stand for themselves.
     let mut span = DeadTimeSpan {
         lowest_v: phase.from_rest[leg],
         highest_v: phase.from_rest[leg],
     };
     span.include(phase.to_rest[leg]);
+    let start = phase.from_rest.map(S::value);
     let mut currents = [0.0; PIECES + 1];
-    currents[0] = phase.from_rest[current].value();
+    currents[0] = start[current];
     currents[PIECES] = phase.to_rest[current].value();
-    exponential.eighths(&phase.from_rest, |k, state| currents[k] = state[current]);
+    exponential.eighths(&start, |k, state| currents[k] = state[current]);
     for (piece, ends) in currents.windows(2).enumerate() {
         if ends[0] * ends[1] < 0.0 {
             let at = |k: usize| k as f64 / PIECES as f64;
-            let plain = exponential.values();
-            let start = phase.from_rest.map(S::value);
             let turn = crossing((at(piece), ends[0]), (at(piece + 1), ends[1]), |f| {
-                plain.part(f, &start)[current]
+                exponential.part(f, &start)[current]
             });
             // At the turn the voltage does not move with time, so its derivatives are those at a fixed fraction.
-            span.include(exponential.part(turn, &phase.from_rest)[leg]);
+            span.include(exponential.moving_part(turn, &phase.from_rest)?[leg]);
         }
     }
-    span
+    Some(span)
 }
 
 impl<S: Scalar> DeadTimeSpan<S> {

@@ -7,8 +7,10 @@ use widefront::evaluate::Setup;
 use widefront::search::Context;
 use widefront::search::problem::{Goal, SliceProblem};
 use widefront::search::quadratic::MOST_VARIABLES;
+use widefront::search::solver::Constrained;
 use widefront::search::space::{cells, slices};
 use widefront::stage::{Coil, Sizing};
+use widefront::steady::period::ALL_HARMONICS;
 use widefront::study::Objective;
 use widefront::{evaluate, study, technology};
 
@@ -34,7 +36,14 @@ fn kernel(c: &mut Criterion) {
         };
         let phases = if dead_time > 0.0 { 4 } else { 2 };
         c.bench_function(&format!("steady state and leg, {phases} phases"), |b| {
-            b.iter(|| evaluate::core(black_box(&setup), black_box(&sizing), black_box(&coil)));
+            b.iter(|| {
+                evaluate::core(
+                    black_box(&setup),
+                    black_box(&sizing),
+                    black_box(&coil),
+                    ALL_HARMONICS,
+                )
+            });
         });
     }
     let space = file.study.space.as_ref().expect("space");
@@ -63,7 +72,7 @@ fn kernel(c: &mut Criterion) {
         .find(|point| problem.merits(point).is_ok())
         .expect("some diameter gives a design");
     c.bench_function("value and gradient in 8 variables", |b| {
-        b.iter(|| problem.merits(black_box(&point)));
+        b.iter(|| problem.assess(black_box(&point)));
     });
 }
 

@@ -63,45 +63,57 @@ pub fn series_impedance_meshed(
     mesh: Mesh,
 ) -> SeriesImpedance {
     let turns = geometry.turns as usize;
-    let (radii, heights, half_resistances, distances) = filaments(process, geometry, mesh);
-    let per_turn = mesh.across * mesh.half_through;
+    let cut = Cut::new(process, geometry, mesh);
+    let layers = mesh.half_through;
+    let per_turn = mesh.across * layers;
     let count = per_turn * turns;
     // Unknowns: pair currents, turn voltages, and last the common current: the last pivot is the impedance.
     let size = count + turns + 1;
     let mut system = ComplexSymmetric::zeros(size);
-    let mut near = vec![0.0; count];
-    let mut far = vec![0.0; count];
-    let mut z2 = vec![0.0; count];
-    for i in 0..count {
-        let right = i..count;
-        for (slot, &z) in z2[right.clone()].iter_mut().zip(&heights[right.clone()]) {
-            *slot = (z - heights[i]).powi(2);
+    // Columns of filaments one above the other: between two columns only a few axial distances occur.
+    let columns = cut.radii.len();
+    let mut near = vec![0.0; layers * layers * columns];
+    let mut far = vec![0.0; layers * layers * columns];
+    for p in 0..columns {
+        let (radius, right) = (cut.radii[p], &cut.radii[p..]);
+        let row = |l: usize, m: usize| {
+            let begin = (l * layers + m) * columns;
+            begin..begin + right.len()
+        };
+        mutual_row(radius, right, 0.0, &mut near[row(0, 0)]);
+        for l in 0..layers {
+            for m in l..layers {
+                let (low, high) = (cut.heights[l], cut.heights[m]);
+                mutual_row(radius, right, low + high, &mut far[row(l, m)]);
+                if l == m {
+                    near.copy_within(row(0, 0), row(l, l).start);
+                } else {
+                    mutual_row(radius, right, high - low, &mut near[row(l, m)]);
+                }
+            }
         }
-        mutual_row(
-            radii[i],
-            &radii[right.clone()],
-            &z2[right.clone()],
-            &mut near[right.clone()],
-        );
-        for (slot, &z) in z2[right.clone()].iter_mut().zip(&heights[right.clone()]) {
-            *slot = (z + heights[i]).powi(2);
+        for l in 0..layers {
+            let i = p * layers + l;
+            let line = &mut system.row_im_mut(i)[p * layers..count];
+            for m in 0..layers {
+                let pair = row(l.min(m), l.max(m));
+                let both = near[pair.clone()].iter().zip(&far[pair]);
+                for (slot, (n, f)) in line.iter_mut().skip(m).step_by(layers).zip(both) {
+                    *slot = 0.5 * omega * (n + f);
+                }
+            }
+            let own = VACUUM_PERMEABILITY_H_M
+                * radius
+                * ((8.0 * radius / cut.mean_distance_m(p, l)).ln() - 2.0);
+            let image = far[row(l, l).start];
+            system.set(
+                i,
+                i,
+                cut.half_resistance_ohm(p, l),
+                0.5 * omega * (own + image),
+            );
+            system.set(i, count + i / per_turn, -1.0, 0.0);
         }
-        mutual_row(
-            radii[i],
-            &radii[right.clone()],
-            &z2[right.clone()],
-            &mut far[right.clone()],
-        );
-        near[i] = VACUUM_PERMEABILITY_H_M * radii[i] * ((8.0 * radii[i] / distances[i]).ln() - 2.0);
-        for (slot, (n, f)) in system.row_im_mut(i)[right.clone()]
-            .iter_mut()
-            .zip(near[right.clone()].iter().zip(&far[right]))
-        {
-            *slot = 0.5 * omega * (n + f);
-        }
-        let im = system.row_im_mut(i)[i];
-        system.set(i, i, half_resistances[i], im);
-        system.set(i, count + i / per_turn, -1.0, 0.0);
     }
     for turn in 0..turns {
         system.set(count + turn, size - 1, -1.0, 0.0);
@@ -113,35 +125,53 @@ pub fn series_impedance_meshed(
     }
 }
 
-/// Radii, heights above the middle plane, half the resistances and mean distances g of the upper filaments, turn by turn.
-fn filaments(
-    process: &SpiralProcess,
-    geometry: &SpiralGeometry,
-    mesh: Mesh,
-) -> (Vec<f64>, Vec<f64>, Vec<f64>, Vec<f64>) {
-    let across = cosine_edges(mesh.across);
-    let through = cosine_edges(2 * mesh.half_through);
-    let (w, t) = (geometry.trace_m, process.thickness_m);
-    let count = geometry.turns as usize * mesh.across * mesh.half_through;
-    let mut lists = [const { Vec::new() }; 4];
-    lists
-        .iter_mut()
-        .for_each(|l: &mut Vec<f64>| l.reserve(count));
-    for turn in 0..geometry.turns {
-        let outer = 0.5 * geometry.diameter_m - f64::from(turn) * (w + process.spacing_m);
-        for column in across.windows(2) {
-            let radius = outer - w * 0.5 * (column[0] + column[1]);
-            let width = w * (column[1] - column[0]);
-            for layer in through[mesh.half_through..].windows(2) {
-                let thickness = t * (layer[1] - layer[0]);
-                let area = width * thickness;
-                lists[0].push(radius);
-                lists[1].push(t * (0.5 * (layer[0] + layer[1]) - 0.5));
-                lists[2].push(0.5 * process.resistivity_ohm_m * TAU * radius / area);
-                lists[3].push(0.2235 * (width + thickness));
-            }
+/// The upper half of the turns' sections, cut into columns across the width and layers through the thickness.
+struct Cut {
+    /// Of the columns, m, turn by turn.
+    radii: Vec<f64>,
+    /// Of the columns, m.
+    widths: Vec<f64>,
+    /// Of the layers above the middle plane, m.
+    heights: Vec<f64>,
+    /// Of the layers, m.
+    thicknesses: Vec<f64>,
+    resistivity_ohm_m: f64,
+}
+
+impl Cut {
+    fn new(process: &SpiralProcess, geometry: &SpiralGeometry, mesh: Mesh) -> Self {
+        let across = cosine_edges(mesh.across);
+        let through = cosine_edges(2 * mesh.half_through);
+        let (w, t) = (geometry.trace_m, process.thickness_m);
+        let turns = 0..geometry.turns;
+        let outer =
+            |turn: u32| 0.5 * geometry.diameter_m - f64::from(turn) * (w + process.spacing_m);
+        let upper = || through[mesh.half_through..].windows(2);
+        Self {
+            radii: turns
+                .clone()
+                .flat_map(|turn| {
+                    let edges = across.windows(2);
+                    edges.map(move |e| outer(turn) - w * 0.5 * (e[0] + e[1]))
+                })
+                .collect(),
+            widths: turns
+                .flat_map(|_| across.windows(2).map(|e| w * (e[1] - e[0])))
+                .collect(),
+            heights: upper().map(|e| t * (0.5 * (e[0] + e[1]) - 0.5)).collect(),
+            thicknesses: upper().map(|e| t * (e[1] - e[0])).collect(),
+            resistivity_ohm_m: process.resistivity_ohm_m,
         }
     }
-    let [radii, heights, half_resistances, distances] = lists;
-    (radii, heights, half_resistances, distances)
+
+    /// Half the resistance of a filament, Ω: it and its mirror image in parallel.
+    fn half_resistance_ohm(&self, column: usize, layer: usize) -> f64 {
+        let area = self.widths[column] * self.thicknesses[layer];
+        0.5 * self.resistivity_ohm_m * TAU * self.radii[column] / area
+    }
+
+    /// Geometric mean distance g of a filament's section from itself, m.
+    fn mean_distance_m(&self, column: usize, layer: usize) -> f64 {
+        0.2235 * (self.widths[column] + self.thicknesses[layer])
+    }
 }

@@ -1,0 +1,477 @@
+//! Traces a cell's front: every slice by warm-started constrained optimisation.
+//!
+//! The front is the set of best efficiencies under targets of output power and area (the ε-constraint method: Haimes,
+//! Lasdon and Wismer 1971) on a grid that all slices share. A tighter target cannot be met better than a looser one, so
+//! what a slice reached before bounds what it can reach: at each target slices are taken by their bound, and those whose
+//! bound is below what is found already are dropped.
+
+use super::Context;
+use super::cell::CERTIFIED_RESIDUAL;
+use super::problem::{Goal, SliceProblem};
+use super::quadratic::{MOST_VARIABLES, Row};
+use super::reach::{NO_TARGET, Reached, Solved, Target, better};
+use super::solver::{Curvature, Ended, FEASIBLE, SequentialQuadratic, no_curvature};
+use super::space::{Cell, Slice};
+use crate::study::Objective;
+use argmin::core::Executor;
+use std::sync::atomic::{AtomicBool, Ordering};
+
+/// First-order residual asked of an answer.
+const RESIDUAL: f64 = 1e-5;
+/// How far past a slice's extreme (logarithm) is out of its reach: more than the solves' tolerance.
+const EXTREME_SLACK: f64 = 1e-4;
+/// What a unit of broken limits counts when starts are ranked, in units of ln efficiency.
+const VIOLATION_WEIGHT: f64 = 10.0;
+const MOST_ITERATIONS: u64 = 80;
+/// Starts this near to where a slice stands already lead to the same hill.
+const SAME_HILL: f64 = 0.02;
+
+/// The search of one cell under way.
+pub(super) struct Tracer<'a> {
+    context: &'a Context<'a>,
+    slices: &'a [Slice],
+    /// Assessments spent.
+    pub evaluations: u64,
+    /// Everything found.
+    pub found: Vec<Solved>,
+    /// What each slice is known to reach.
+    reached: Vec<Reached>,
+    stop: &'a AtomicBool,
+}
+
+impl<'a> Tracer<'a> {
+    pub fn new(context: &'a Context<'a>, slices: &'a [Slice], stop: &'a AtomicBool) -> Self {
+        Self {
+            context,
+            slices,
+            evaluations: 0,
+            found: Vec::new(),
+            reached: slices.iter().map(|_| Reached::new()).collect(),
+            stop,
+        }
+    }
+
+    /// Traces the front.
+    pub fn run(&mut self, cell: &Cell) {
+        let trades = |o| self.context.objectives.contains(&o);
+        let primary = [
+            Objective::Efficiency,
+            Objective::OutputPower,
+            Objective::Area,
+        ]
+        .into_iter()
+        .find(|&o| trades(o))
+        .unwrap_or(Objective::Efficiency);
+        let targets_power = trades(Objective::OutputPower) && primary != Objective::OutputPower;
+        let targets_area = trades(Objective::Area) && primary != Objective::Area;
+        let mut wanted = vec![primary];
+        wanted.extend(targets_power.then_some(Objective::OutputPower));
+        self.corners(cell, &wanted);
+
+        // The first column has all the area it asks for.
+        let levels = self.context.effort.levels;
+        let Some(top) = self.best_at(&NO_TARGET, primary) else {
+            return;
+        };
+        let mut rows = None;
+        if targets_power && let Some(most_power) = self.strongest(&NO_TARGET) {
+            let shared = Rows {
+                origin: top.merits[1],
+                step: (most_power - top.merits[1]) / levels as f64,
+            };
+            self.column(
+                &NO_TARGET,
+                primary,
+                shared.between(top.merits[1], most_power),
+            );
+            rows = Some(shared);
+        }
+        if targets_area && let Some(least_area) = self.smallest_of(self.least_of_corners()) {
+            let most_area = self
+                .found
+                .iter()
+                .map(|s| s.merits[2])
+                .fold(f64::NEG_INFINITY, f64::max);
+            // Down to where no slice follows: others may reach below the one that set the step.
+            let step = ((most_area - least_area) / levels as f64).max(EXTREME_SLACK);
+            let mut alive: Vec<usize> = Vec::new();
+            for k in 1.. {
+                let column = Target {
+                    most_area: most_area - step * k as f64,
+                    ..NO_TARGET
+                };
+                let Some(first) = self.best_at(&column, primary) else {
+                    break;
+                };
+                alive = self.alive(&column);
+                if let Some(rows) = rows
+                    && let Some(most_power) = self.strongest(&column)
+                {
+                    self.column(&column, primary, rows.between(first.merits[1], most_power));
+                }
+            }
+            for slice in alive {
+                self.smallest_of(Some(slice));
+            }
+        }
+    }
+
+    /// The best efficiency under further targets (ln W at least, ln m² at most), ln; none where nothing meets one.
+    pub fn answers(&mut self, targets: &[[f64; 2]]) -> Vec<Option<f64>> {
+        let at = |tracer: &mut Self, &[least_power, most_area]: &[f64; 2]| {
+            let target = Target {
+                least_power,
+                most_area,
+            };
+            let best = tracer.best_at(&target, Objective::Efficiency)?;
+            Some(best.merits[0])
+        };
+        targets.iter().map(|t| at(self, t)).collect()
+    }
+
+    fn spend(&mut self, assessments: u64) {
+        self.evaluations += assessments;
+        self.context.count(assessments);
+    }
+
+    /// Slices that may still reach a target.
+    fn alive(&self, target: &Target) -> Vec<usize> {
+        (0..self.slices.len())
+            .filter(|&slice| self.reached[slice].bound(target) > f64::NEG_INFINITY)
+            .collect()
+    }
+
+    /// The best at every row of a column.
+    fn column(&mut self, column: &Target, primary: Objective, rows: impl Iterator<Item = f64>) {
+        for least_power in rows {
+            let target = Target {
+                least_power,
+                ..*column
+            };
+            self.best_at(&target, primary);
+        }
+    }
+
+    /// The best design of any slice that meets a target. Slices are taken by what they may still reach.
+    fn best_at(&mut self, target: &Target, primary: Objective) -> Option<Solved> {
+        let mut order: Vec<(f64, usize)> = self
+            .alive(target)
+            .into_iter()
+            .map(|slice| (self.reached[slice].bound(target), slice))
+            .collect();
+        order.sort_by(|a, b| b.0.total_cmp(&a.0).then(a.1.cmp(&b.1)));
+        let mut best: Option<Solved> = None;
+        for (bound, slice) in order {
+            if best.as_ref().is_some_and(|b| b.score(primary) >= bound) {
+                break;
+            }
+            let known = self.reached[slice].known(target, primary, bound).cloned();
+            let solved = match known {
+                Some(known) => Some(known),
+                None => {
+                    let solved = self.solve_at(slice, target, primary);
+                    self.found.extend(solved.clone());
+                    self.reached[slice].solved.extend(solved.clone());
+                    solved
+                }
+            };
+            let score = solved
+                .as_ref()
+                .map_or(f64::NEG_INFINITY, |s| s.score(primary));
+            self.reached[slice].note(*target, score);
+            best = better(best, solved, primary);
+        }
+        best
+    }
+
+    /// A slice's best under a target, from what it reached before.
+    fn solve_at(&mut self, slice: usize, target: &Target, primary: Objective) -> Option<Solved> {
+        let starts = self.reached[slice].starts(target);
+        let mut best = None;
+        for (point, curvature) in starts {
+            let solved = self.solve(slice, target, primary, &point, &curvature);
+            best = better(best, solved, primary);
+            if best
+                .as_ref()
+                .is_some_and(|b| b.residual <= CERTIFIED_RESIDUAL)
+            {
+                break;
+            }
+        }
+        best
+    }
+
+    /// The most output power of any slice under an area target, ln W.
+    fn strongest(&mut self, column: &Target) -> Option<f64> {
+        let mut order: Vec<(f64, usize)> = self
+            .alive(column)
+            .into_iter()
+            .map(|slice| (self.reached[slice].most_power, slice))
+            .collect();
+        order.sort_by(|a, b| b.0.total_cmp(&a.0).then(a.1.cmp(&b.1)));
+        let mut best: Option<f64> = None;
+        for (limit, slice) in order {
+            if best.is_some_and(|b| b >= limit) {
+                break;
+            }
+            let strong = Target {
+                least_power: limit,
+                ..*column
+            };
+            let Some((point, curvature)) = self.reached[slice].starts(&strong).pop() else {
+                continue;
+            };
+            let solved = self.solve(slice, column, Objective::OutputPower, &point, &curvature);
+            if let Some(solved) = solved {
+                let power = solved.merits[1];
+                // Columns narrow, so this holds for all that follow.
+                self.reached[slice].most_power = power + EXTREME_SLACK;
+                best = Some(best.map_or(power, |b| b.max(power)));
+                self.reached[slice].solved.push(solved.clone());
+                self.found.push(solved);
+            }
+        }
+        best
+    }
+
+    /// The slice with the smallest solved design.
+    fn least_of_corners(&self) -> Option<usize> {
+        let least = |slice: usize| {
+            let areas = self.reached[slice].solved.iter().map(|s| s.merits[2]);
+            areas.fold(f64::INFINITY, f64::min)
+        };
+        self.alive(&NO_TARGET)
+            .into_iter()
+            .min_by(|&a, &b| least(a).total_cmp(&least(b)))
+    }
+
+    /// The least area of a slice, ln m², from the smallest design it has.
+    fn smallest_of(&mut self, slice: Option<usize>) -> Option<f64> {
+        let slice = slice?;
+        let nearest = self.reached[slice]
+            .solved
+            .iter()
+            .min_by(|a, b| a.merits[2].total_cmp(&b.merits[2]))?;
+        let (point, curvature) = (nearest.point, nearest.curvature);
+        let objective = Objective::Area;
+        let solved = self.solve(slice, &NO_TARGET, objective, &point, &curvature)?;
+        let area = solved.merits[2];
+        self.reached[slice].solved.push(solved.clone());
+        self.found.push(solved);
+        Some(area)
+    }
+
+    fn problem(&self, slice: usize, goal: Goal) -> Option<SliceProblem<'a>> {
+        let slice = &self.slices[slice];
+        Some(SliceProblem {
+            setup: self.context.setup,
+            slice,
+            coil: self.context.coil_source(slice.turns)?,
+            goal,
+        })
+    }
+
+    /// One solve; `None` when it ends without a feasible point.
+    fn solve(
+        &mut self,
+        slice: usize,
+        target: &Target,
+        best: Objective,
+        point: &Row,
+        curvature: &Curvature,
+    ) -> Option<Solved> {
+        if self.stop.load(Ordering::Relaxed) {
+            return None;
+        }
+        let problem = self.problem(slice, target.goal(best))?;
+        let solver = SequentialQuadratic::new(*point, *curvature, RESIDUAL);
+        let result = Executor::new(problem, solver)
+            .configure(|state| state.max_iters(MOST_ITERATIONS))
+            .ctrlc(false)
+            .timer(false)
+            .run();
+        // The solver's own steps cannot fail; an error here would be argmin's.
+        let result = result.ok()?;
+        let spent = result.problem.counts.get("assessments").copied();
+        let solver = result.solver;
+        self.spend(spent.unwrap_or(0));
+        let feasible = solver.violation <= FEASIBLE
+            && !matches!(solver.ended, Ended::NoStart | Ended::Infeasible);
+        let assessment = solver.assessment.filter(|_| feasible)?;
+        Some(Solved {
+            slice,
+            point: solver.point,
+            curvature: solver.curvature,
+            residual: solver.residual,
+            merits: assessment.merits,
+            target: *target,
+        })
+    }
+
+    /// The best design of every slice in efficiency and output power. There is more than one hill: several starts, and a
+    /// slice also starts where its neighbours' best stand, once forward and once back.
+    fn corners(&mut self, cell: &Cell, wanted: &[Objective]) {
+        let count = self.slices.len();
+        let mut corners: Vec<Vec<Option<Solved>>> = vec![vec![None; wanted.len()]; count];
+        for slice in 0..count {
+            let drawn = self.draw(cell, slice);
+            for (which, &objective) in wanted.iter().enumerate() {
+                let mut points = ranked(&drawn, objective);
+                points.truncate(if which == 0 {
+                    self.context.effort.starts
+                } else {
+                    1
+                });
+                // A slice without a feasible design is not climbed for its other extremes.
+                let own = corners[slice][0].as_ref().map(|s| s.point);
+                if which > 0 {
+                    if own.is_none() {
+                        continue;
+                    }
+                    points.extend(own);
+                }
+                points.extend(neighbour(&corners, slice.checked_sub(1), which));
+                for point in points {
+                    self.climb(slice, objective, &point, &mut corners[slice][which]);
+                }
+            }
+        }
+        for slice in (0..count).rev() {
+            for (which, &objective) in wanted.iter().enumerate() {
+                if let Some(point) = neighbour(&corners, Some(slice + 1), which)
+                    && corners[slice][0].is_some()
+                {
+                    self.climb(slice, objective, &point, &mut corners[slice][which]);
+                }
+            }
+        }
+        for (slice, corners) in corners.into_iter().enumerate() {
+            self.keep_corners(slice, wanted, corners);
+        }
+    }
+
+    /// Points of a slice drawn by seed, each with its merits and what it breaks of the limits.
+    fn draw(&mut self, cell: &Cell, slice: usize) -> Vec<Drawn> {
+        let samples = self.context.effort.samples;
+        self.spend(samples as u64);
+        let Some(problem) = self.problem(slice, NO_TARGET.goal(Objective::Efficiency)) else {
+            return Vec::new();
+        };
+        let axes = self.slices[slice].axes.len();
+        (0..samples)
+            .map(|number| self.context.start(cell, slice, number, axes))
+            .filter_map(|mut point| {
+                let merits = problem.merits(&point[..axes]).ok()?;
+                point[axes..axes + 2].copy_from_slice(&merits.residual);
+                let broken = merits.limits.iter().map(|l| (-l).max(0.0)).sum();
+                Some(Drawn {
+                    point,
+                    merits: merits.objectives,
+                    broken,
+                })
+            })
+            .collect()
+    }
+
+    fn climb(
+        &mut self,
+        slice: usize,
+        objective: Objective,
+        point: &Row,
+        best: &mut Option<Solved>,
+    ) {
+        let axes = self.slices[slice].axes.len();
+        let near = |s: &Solved| (0..axes).all(|i| (s.point[i] - point[i]).abs() < SAME_HILL);
+        if best.as_ref().is_some_and(near) {
+            return;
+        }
+        let solved = self.solve(slice, &NO_TARGET, objective, point, &no_curvature());
+        *best = better(best.take(), solved, objective);
+    }
+
+    /// Notes what the corners say of a slice's reach.
+    fn keep_corners(&mut self, slice: usize, wanted: &[Objective], corners: Vec<Option<Solved>>) {
+        let reached = &mut self.reached[slice];
+        for (which, (&objective, corner)) in wanted.iter().zip(corners).enumerate() {
+            let Some(corner) = corner else {
+                if which == 0 {
+                    reached.note(NO_TARGET, f64::NEG_INFINITY);
+                }
+                continue;
+            };
+            let most = corner.score(objective) + EXTREME_SLACK;
+            // Beyond its own extreme a slice reaches nothing.
+            match objective {
+                _ if which == 0 => reached.note(NO_TARGET, most),
+                Objective::OutputPower => {
+                    reached.most_power = most;
+                    let beyond = Target {
+                        least_power: most,
+                        ..NO_TARGET
+                    };
+                    reached.note(beyond, f64::NEG_INFINITY);
+                }
+                Objective::Area | Objective::Efficiency => {}
+            }
+            self.found.push(corner.clone());
+            reached.solved.push(corner);
+        }
+    }
+}
+
+/// Levels of output power, ln W, shared by all columns.
+#[derive(Debug, Clone, Copy)]
+struct Rows {
+    origin: f64,
+    step: f64,
+}
+
+impl Rows {
+    /// Levels strictly between two powers, none nearer to either than a tenth of a step.
+    fn between(self, low: f64, high: f64) -> impl Iterator<Item = f64> {
+        let first = ((low - self.origin) / self.step + 0.1).ceil();
+        let last = ((high - self.origin) / self.step - 0.1).floor();
+        let count = if self.step > 0.0 && last >= first {
+            (last - first) as usize + 1
+        } else {
+            0
+        };
+        (0..count).map(move |k| self.origin + self.step * (first + k as f64))
+    }
+}
+
+struct Drawn {
+    point: Row,
+    merits: [f64; 3],
+    broken: f64,
+}
+
+/// Drawn points, best and least infeasible first.
+fn ranked(drawn: &[Drawn], objective: Objective) -> Vec<Row> {
+    let cost = |d: &Drawn| {
+        let best = match objective {
+            Objective::Efficiency => -d.merits[0],
+            Objective::OutputPower => -d.merits[1],
+            Objective::Area => d.merits[2],
+        };
+        best + VIOLATION_WEIGHT * d.broken
+    };
+    let mut order: Vec<(f64, Row)> = drawn.iter().map(|d| (cost(d), d.point)).collect();
+    order.sort_by(|a, b| a.0.total_cmp(&b.0));
+    order.into_iter().map(|(_, p)| p).collect()
+}
+
+/// Where a neighbouring slice's best stands.
+fn neighbour(corners: &[Vec<Option<Solved>>], slice: Option<usize>, which: usize) -> Option<Row> {
+    let solved = corners.get(slice?)?.get(which)?.as_ref()?;
+    Some(solved.point)
+}
+
+/// A point of the box.
+pub(super) fn start_point(axes: usize, mut place: impl FnMut() -> f64) -> Row {
+    let mut point = [0.0; MOST_VARIABLES];
+    for slot in point.iter_mut().take(axes) {
+        *slot = place();
+    }
+    point
+}

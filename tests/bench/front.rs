@@ -1,0 +1,382 @@
+//! Fronts against evolutionary baselines and against long reference fronts.
+//!
+//! `cargo bench --bench front` compares; `cargo bench --bench front -- reference` makes the references anew (some twenty
+//! minutes of two cores). Cells: every fourth of the default study's two axes, and three cells each of the open 130 nm
+//! study, the stacked study and the default study with two legs.
+//!
+//! A reference is the union of everything that NSGA-II (Deb, Pratap, Agarwal and Meyarivan 2002) and NSGA-III (Deb and Jain
+//! 2014) see in a hundred times the search's own assessments of the cell, of three searches with finer levels, more
+//! draws, more starts and other seeds, and of the search itself; thinned to a hundredth of its span. Infeasible designs rank
+//! behind feasible ones by what they break (Deb's rules), whole numbers are rounded.
+
+use forge_core::algo::{NsgaII, NsgaIII};
+use forge_core::problem::{MultiProblem, multi_func};
+use forge_core::solution::ParetoFront;
+use forge_core::termination::Termination;
+use rayon::prelude::*;
+use std::cell::RefCell;
+use std::fmt::Write as _;
+use std::path::{Path, PathBuf};
+use std::sync::atomic::AtomicBool;
+use std::time::Instant;
+use widefront::evaluate::Setup;
+use widefront::numerics::hypervolume::hypervolume;
+use widefront::run::session::hypervolume_reference;
+use widefront::search::cell::{best_efficiencies, point_costs, search_cell};
+use widefront::search::front::{Costs, non_dominated, spread};
+use widefront::search::problem::{Goal, SliceProblem};
+use widefront::search::space::{Cell, Slice, cells, slices};
+use widefront::search::{Context, Effort};
+use widefront::study::{Objective, Study};
+use widefront::technology::Technology;
+use widefront::{study, technology};
+
+/// Multiples of the search's own assessments that the baselines get.
+const BUDGETS: [u64; 3] = [1, 10, 100];
+/// As many as the search finds points in a cell; for NSGA-III also its reference directions, C(24, 2).
+const POPULATION: usize = 300;
+const DIVISIONS: usize = 23;
+/// Objectives of an infeasible design: behind every feasible one, in the order of what is broken.
+const INFEASIBLE: f64 = 1e3;
+/// Points of a reference are no closer than this part of its span.
+const REFERENCE_SPACING: f64 = 0.01;
+/// Demands asked of a cell where the efficiency at equal power and area is compared.
+const DEMANDS: usize = 100;
+/// Seeds of the longer searches.
+const LONG_SEEDS: [u64; 3] = [101, 102, 103];
+const LONG: Effort = Effort {
+    levels: 78,
+    samples: 320,
+    starts: 12,
+};
+
+struct Subject {
+    name: &'static str,
+    study: Study,
+    technology: Technology,
+    cells: Vec<usize>,
+}
+
+fn subject(name: &'static str, file: &str, cells: &[usize]) -> Subject {
+    let path = Path::new(env!("CARGO_MANIFEST_DIR"))
+        .join("configs/studies")
+        .join(file);
+    let file = study::read(&path).expect("study");
+    let technology = technology::read_for(&file).expect("technology").technology;
+    Subject {
+        name,
+        study: file.study,
+        technology,
+        cells: cells.to_vec(),
+    }
+}
+
+fn subjects() -> Vec<Subject> {
+    let mut two_legs = subject("two-legs", "default.toml", &[0, 40, 80]);
+    two_legs.study.stage.legs = 2;
+    vec![
+        subject(
+            "default",
+            "default.toml",
+            &[0, 4, 8, 36, 40, 44, 72, 76, 80],
+        ),
+        subject("open130", "open130.toml", &[0, 40, 80]),
+        subject("stacked", "stacked.toml", &[0, 40, 80]),
+        two_legs,
+    ]
+}
+
+/// A cell as one problem of continuous and rounded variables.
+struct Whole<'a> {
+    problems: Vec<SliceProblem<'a>>,
+    area_scale: f64,
+    seen: RefCell<Vec<Costs>>,
+}
+
+impl<'a> Whole<'a> {
+    fn new(context: &'a Context<'a>, slices: &'a [Slice], area_m2: f64) -> Self {
+        let problem = |slice: &'a Slice| {
+            Some(SliceProblem {
+                setup: context.setup,
+                slice,
+                coil: context.coil_source(slice.turns)?,
+                goal: Goal {
+                    best: Objective::Efficiency,
+                    least_ln_power: None,
+                    most_ln_area: None,
+                },
+            })
+        };
+        Self {
+            problems: slices.iter().filter_map(problem).collect(),
+            area_scale: area_m2,
+            seen: RefCell::new(Vec::new()),
+        }
+    }
+
+    /// Objectives of order 1; feasible designs are remembered.
+    fn objectives(&self, x: &[f64]) -> Vec<f64> {
+        let (places, which) = x.split_at(x.len() - 1);
+        let last = self.problems.len() - 1;
+        let slice = (which[0] * self.problems.len() as f64) as usize;
+        let Ok(merits) = self.problems[slice.min(last)].merits(places) else {
+            return vec![2.0 * INFEASIBLE; 3];
+        };
+        let broken: f64 = merits.limits.iter().map(|l| (-l).max(0.0)).sum();
+        if broken > 0.0 {
+            return vec![INFEASIBLE + broken.min(INFEASIBLE); 3];
+        }
+        let [efficiency, power, area] = merits.objectives.map(f64::exp);
+        let mut seen = self.seen.borrow_mut();
+        seen.push([-efficiency, -power, area]);
+        if seen.len() >= 1 << 16 {
+            let kept = non_dominated(&seen).into_iter().map(|i| seen[i]).collect();
+            *seen = kept;
+        }
+        vec![-efficiency, -10.0 * power, area / self.area_scale]
+    }
+
+    /// Non-dominated of what was seen, and forgets it.
+    fn take(&self) -> Vec<Costs> {
+        let seen = self.seen.take();
+        non_dominated(&seen).into_iter().map(|i| seen[i]).collect()
+    }
+}
+
+fn evolve(whole: &Whole<'_>, third: bool, budget: u64) -> ParetoFront {
+    let dimension = whole.problems[0].axes() + 1;
+    let problem = multi_func(vec![(0.0, 1.0); dimension], 3, |x: &[f64]| {
+        whole.objectives(x)
+    });
+    assert_eq!(problem.dim(), dimension);
+    let until = Termination::budget(budget as usize);
+    if third {
+        let settings = NsgaIII {
+            pop_size: POPULATION,
+            divisions: DIVISIONS,
+            ..NsgaIII::default()
+        };
+        settings.optimize(&problem, &until)
+    } else {
+        let settings = NsgaII {
+            pop_size: POPULATION,
+            ..NsgaII::default()
+        };
+        settings.optimize(&problem, &until)
+    }
+}
+
+fn population(front: &ParetoFront, area_scale: f64) -> Vec<Costs> {
+    front
+        .solutions
+        .iter()
+        .filter(|s| s.objectives[0] < 0.0)
+        .map(|s| {
+            [
+                s.objectives[0],
+                s.objectives[1] / 10.0,
+                s.objectives[2] * area_scale,
+            ]
+        })
+        .collect()
+}
+
+/// Efficiency × W × mm².
+fn volume(points: &[Costs], area_m2: f64) -> f64 {
+    const MM2: f64 = 1e6;
+    let scaled: Vec<Costs> = points.iter().map(|p| [p[0], p[1], p[2] * MM2]).collect();
+    hypervolume(&scaled, &[0.0, 0.0, area_m2 * MM2])
+}
+
+/// One cell with all that a comparison needs.
+struct Place<'a> {
+    name: String,
+    context: Context<'a>,
+    cell: Cell,
+    area_m2: f64,
+}
+
+fn searched(place: &Place<'_>) -> (Vec<Costs>, u64) {
+    let never = AtomicBool::new(false);
+    let front = search_cell(&place.context, &place.cell, &never).expect("not stopped");
+    let costs = front
+        .points
+        .iter()
+        .map(|p| point_costs(place.context.objectives, p));
+    (costs.collect(), front.evaluations)
+}
+
+fn reference_path(name: &str) -> PathBuf {
+    Path::new(env!("CARGO_MANIFEST_DIR"))
+        .join("tests/reference/fronts")
+        .join(format!("{name}.csv"))
+}
+
+fn thinned(points: &[Costs], spacing: f64) -> Vec<Costs> {
+    spread(points, spacing)
+        .into_iter()
+        .map(|i| points[i])
+        .collect()
+}
+
+/// Makes a cell's reference; returns what there is to say of it.
+fn make_reference(place: &mut Place<'_>) -> String {
+    let (own, evaluations) = searched(place);
+    let budget = evaluations * BUDGETS[2];
+    let mut union = own.clone();
+    let mut spent = evaluations;
+    {
+        let slices = slices(place.context.space, &place.cell);
+        let whole = Whole::new(&place.context, &slices, place.area_m2);
+        for third in [false, true] {
+            spent += evolve(&whole, third, budget).evaluations as u64;
+        }
+        union.extend(whole.take());
+    }
+    let (seed, effort) = (place.context.seed, place.context.effort);
+    place.context.effort = LONG;
+    for seed in LONG_SEEDS {
+        place.context.seed = seed;
+        let (points, evaluations) = searched(place);
+        spent += evaluations;
+        union.extend(points);
+    }
+    (place.context.seed, place.context.effort) = (seed, effort);
+    let full: Vec<Costs> = non_dominated(&union)
+        .into_iter()
+        .map(|i| union[i])
+        .collect();
+    let kept = thinned(&full, REFERENCE_SPACING);
+    let mut text = format!(
+        "# cargo bench --bench front -- reference: union of NSGA-II, NSGA-III, longer searches and the search, {spent} \
+         assessments\n# hypervolume of all {} points, efficiency x W x mm^2: {:.9}\nefficiency,output_power_w,area_m2\n",
+        full.len(),
+        volume(&full, place.area_m2)
+    );
+    for p in &kept {
+        let _ = writeln!(text, "{:.7},{:.7e},{:.7e}", -p[0], -p[1], p[2]);
+    }
+    let path = reference_path(&place.name);
+    std::fs::create_dir_all(path.parent().expect("folder")).expect("folder");
+    std::fs::write(path, text).expect("reference");
+    format!(
+        "{:<12} {spent:>9} assessments, {} points, {} kept; the search's own front has {:.4} of its hypervolume",
+        place.name,
+        full.len(),
+        kept.len(),
+        volume(&own, place.area_m2) / volume(&full, place.area_m2)
+    )
+}
+
+fn read_reference(name: &str) -> (Vec<Costs>, f64) {
+    let path = reference_path(name);
+    let text = std::fs::read_to_string(&path).unwrap_or_else(|e| panic!("{}: {e}", path.display()));
+    let all = text
+        .lines()
+        .find_map(|l| {
+            l.strip_prefix("# hypervolume")?
+                .rsplit(' ')
+                .next()?
+                .parse()
+                .ok()
+        })
+        .expect("hypervolume");
+    let points = text
+        .lines()
+        .filter(|l| !l.starts_with(['#', 'e']))
+        .map(|line| {
+            let mut fields = line.split(',').map(|f| f.parse::<f64>().expect("number"));
+            let mut next = || fields.next().expect("field");
+            [-next(), -next(), next()]
+        });
+    (points.collect(), all)
+}
+
+/// Worst of a cell at equal power and area: how far the reference is above, relative; and how many demands it lost.
+fn worst_shortfall(place: &Place<'_>, reference: &[Costs]) -> (f64, u64) {
+    let step = (reference.len() / DEMANDS).max(1);
+    let asked: Vec<&Costs> = reference.iter().step_by(step).collect();
+    let demands: Vec<[f64; 2]> = asked.iter().map(|p| [-p[1], p[2]]).collect();
+    let (answers, evaluations) = best_efficiencies(&place.context, &place.cell, &demands);
+    let worst = asked
+        .iter()
+        .zip(answers)
+        .map(|(p, answer)| answer.map_or(1.0, |best| 1.0 - best / -p[0]))
+        .fold(0.0, f64::max);
+    (worst, evaluations)
+}
+
+fn compare(place: &Place<'_>) -> String {
+    let start = Instant::now();
+    let (own, evaluations) = searched(place);
+    let own_s = start.elapsed().as_secs_f64();
+    let (reference, all) = read_reference(&place.name);
+    // At equal density: the reference thinned as the search thins its own points.
+    let spacing = 0.25 / place.context.effort.levels as f64;
+    let ratio = |points: &[Costs]| volume(points, place.area_m2) / all;
+    let (shortfall, with_demands) = worst_shortfall(place, &reference);
+    let mut line = format!(
+        "{:<12} search    {evaluations:>8} {own_s:>7.2} s {:>5} points  volume {:.4}  shortfall {:.4} %  ({} demands, {} assessments more)\n",
+        place.name,
+        own.len(),
+        ratio(&own),
+        100.0 * shortfall,
+        reference.len().div_ceil((reference.len() / DEMANDS).max(1)),
+        with_demands - evaluations.min(with_demands),
+    );
+    let slices = slices(place.context.space, &place.cell);
+    let whole = Whole::new(&place.context, &slices, place.area_m2);
+    for times in BUDGETS {
+        for (third, name) in [(false, "NSGA-II"), (true, "NSGA-III")] {
+            let start = Instant::now();
+            let front = evolve(&whole, third, evaluations * times);
+            let seconds = start.elapsed().as_secs_f64();
+            let last = population(&front, place.area_m2);
+            let seen = thinned(&whole.take(), spacing);
+            let _ = writeln!(
+                line,
+                "{:<12} {name:<9} {:>8} {seconds:>7.2} s {:>5} points  volume {:.4}  all it saw, thinned: {:.4}",
+                "",
+                front.evaluations,
+                last.len(),
+                ratio(&last),
+                ratio(&seen),
+            );
+        }
+    }
+    line
+}
+
+fn main() {
+    let subjects = subjects();
+    let remake = std::env::args().any(|a| a == "reference");
+    let setups: Vec<Setup> = subjects
+        .iter()
+        .map(|s| Setup::new(&s.study, &s.technology).expect("setup"))
+        .collect();
+    for (subject, setup) in subjects.iter().zip(&setups) {
+        let space = subject.study.space.as_ref().expect("space");
+        let search = &subject.study.search;
+        let all = cells(space);
+        let lines: Vec<String> = subject
+            .cells
+            .par_iter()
+            .map(|&index| {
+                let mut place = Place {
+                    name: format!("{}-{index:02}", subject.name),
+                    context: Context::new(setup, space, &search.objectives, search.seed),
+                    cell: all[index],
+                    area_m2: hypervolume_reference(&subject.study, setup, space).area_m2,
+                };
+                if remake {
+                    make_reference(&mut place)
+                } else {
+                    compare(&place)
+                }
+            })
+            .collect();
+        for line in lines {
+            println!("{line}");
+        }
+    }
+}
