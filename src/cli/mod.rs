@@ -5,6 +5,7 @@ mod evaluate;
 mod fit;
 mod pick;
 mod progress;
+mod report;
 mod search;
 mod sheet;
 
@@ -58,6 +59,8 @@ enum Command {
     Pick(pick::PickArguments),
     /// The hand-off of one design to layout: snapped to the grid, evaluated again, drawn to scale.
     Sheet(sheet::SheetArguments),
+    /// Figures and one self-contained page of a run, made again from its records.
+    Report(report::ReportArguments),
 }
 
 /// Why a command did not succeed.
@@ -93,6 +96,7 @@ pub fn run() -> ExitCode {
         Command::Search(arguments) => search::run(&arguments),
         Command::Join(arguments) => search::join(&arguments),
         Command::Pick(arguments) => pick::run(&arguments),
+        Command::Report(arguments) => report::run(&arguments),
         Command::Sheet(arguments) => sheet::run(&arguments),
     };
     match result {

@@ -3,7 +3,7 @@
 use super::progress::Progress;
 use super::{Failure, Loaded, complain, load, print};
 use crate::quantity::format as engineering;
-use crate::report::figures::{self, CellBest, FigureInput};
+use crate::report;
 use crate::run::RunError;
 use crate::run::join;
 use crate::run::session::{self, Finished, Job, Part};
@@ -76,7 +76,7 @@ pub fn run(arguments: &SearchArguments) -> Result<(), Failure> {
     let progress = Progress::new(arguments.quiet);
     let finished = session::run(&job, &stop, &progress);
     progress.end();
-    close(&loaded, &out, finished?)
+    close(&out, finished?)
 }
 
 /// Raised by Ctrl-C and SIGTERM. What does not look at it in time is ended: every file is whole at any moment. SIGHUP is
@@ -109,7 +109,7 @@ pub fn join(arguments: &JoinArguments) -> Result<(), Failure> {
     let loaded = load(&arguments.study, &[])?;
     let job = job(&loaded, &arguments.out, false, None, None);
     let finished = join::join(&job, &arguments.parts, &Progress::new(true))?;
-    close(&loaded, &arguments.out, finished)
+    close(&arguments.out, finished)
 }
 
 fn job<'a>(
@@ -141,19 +141,12 @@ fn default_folder(study: &Path, part: Option<Part>) -> Result<PathBuf, Failure> 
     Ok(Path::new("results").join(name))
 }
 
-fn close(loaded: &Loaded, out: &Path, finished: Finished) -> Result<(), Failure> {
+fn close(out: &Path, finished: Finished) -> Result<(), Failure> {
     let (record, summary) = (&finished.record, &finished.summary);
-    let cells: Vec<CellBest> = summary.cells.iter().map(CellBest::from).collect();
-    let input = FigureInput {
-        title: &loaded.file.study.title,
-        designs: &summary.front,
-        cells: &cells,
-        sweep: finished.sweep.as_ref(),
-        period: finished.period.as_ref(),
-    };
-    figures::write_all(&finished.folder.path().join("figures"), &input).map_err(|e| {
+    report::write(&finished.folder).map_err(|e| {
         Failure::Run(format!(
-            "{e}; the run is whole but for its figures; mend this and draw them by search --resume"
+            "{e}; the run is whole but for its report; mend this and make it by `widefront report {}`",
+            out.display()
         ))
     })?;
     let mut text = String::new();

@@ -3,6 +3,7 @@
 use super::records::{CellRecord, SCHEMA};
 use super::{RunError, digest};
 use atomic_write_file::AtomicWriteFile;
+use serde::de::DeserializeOwned;
 use serde::{Deserialize, Serialize};
 use serde_json::Value;
 use std::ffi::OsStr;
@@ -262,10 +263,26 @@ pub fn read_cell(path: &Path, cell: usize) -> Result<Option<CellRecord>, RunErro
 /// # Errors
 /// [`RunError::Damaged`] when it is none, or the system's.
 pub fn read_front(path: &Path) -> Result<super::records::DesignList, RunError> {
-    let name = path.join("front.json");
-    let text = std::fs::read(&name).map_err(io(&name))?;
+    read_record(&path.join("front.json"))
+}
+
+/// Reads a record that a run may lack, as one that was cut short or found no design.
+///
+/// # Errors
+/// As [`read_front`].
+pub fn read_optional<T: DeserializeOwned>(path: &Path, name: &str) -> Result<Option<T>, RunError> {
+    let file = path.join(name);
+    if file.exists() {
+        read_record(&file).map(Some)
+    } else {
+        Ok(None)
+    }
+}
+
+fn read_record<T: DeserializeOwned>(file: &Path) -> Result<T, RunError> {
+    let text = std::fs::read(file).map_err(io(file))?;
     serde_json::from_slice(&text).map_err(|e| RunError::Damaged {
-        path: name,
+        path: file.to_owned(),
         reason: format!("is damaged: {e}"),
     })
 }

@@ -12,6 +12,7 @@ use crate::search::space::{self, Cell};
 use crate::study::{Design, Space, Study};
 use crate::technology::Technology;
 use rayon::prelude::*;
+use std::collections::BTreeSet;
 use std::path::{Path, PathBuf};
 use std::str::FromStr;
 use std::sync::atomic::{AtomicBool, AtomicUsize, Ordering};
@@ -100,10 +101,6 @@ pub struct Finished {
     pub summary: Summary,
     /// `run.json`.
     pub record: RunRecord,
-    /// Losses against width around the most efficient design.
-    pub sweep: Option<WidthSweep>,
-    /// One period of that design.
-    pub period: Option<PeriodRecord>,
     /// The folder, still locked.
     pub folder: RunFolder,
 }
@@ -191,12 +188,10 @@ pub fn run(
     if summary.front.is_empty() && job.part.is_none() {
         return Err(RunError::NothingFeasible);
     }
-    let (sweep, period) = illustrations(job, &folder, &summary)?;
+    illustrations(job, &folder, &summary)?;
     Ok(Finished {
         summary,
         record,
-        sweep,
-        period,
         folder,
     })
 }
@@ -342,17 +337,17 @@ fn close(record: &mut RunRecord, summary: &Summary) {
     record.residuals = summary.residuals;
 }
 
-/// What two figures show: losses against width around the most efficient design, and one period of it.
-fn illustrations(
-    job: &Job<'_>,
-    folder: &RunFolder,
-    summary: &Summary,
-) -> Result<(Option<WidthSweep>, Option<PeriodRecord>), RunError> {
+/// What figures and report show beside the fronts: losses against width around the most efficient design, one period of
+/// it, and of the most efficient design of each cell on the overall front.
+fn illustrations(job: &Job<'_>, folder: &RunFolder, summary: &Summary) -> Result<(), RunError> {
     /// Widths of the sweep, from a fifth to five times the design's.
     const WIDTHS: usize = 61;
     const SAMPLES: usize = 720;
+    /// A page of the report stays small.
+    const MOST_WAVEFORMS: usize = 100;
+    const REPORT_SAMPLES: usize = 120;
     let Some(best) = summary.front.first() else {
-        return Ok((None, None));
+        return Ok(());
     };
     let design = &best.evaluation.design;
     let widths: Vec<f64> = (0..WIDTHS)
@@ -374,15 +369,30 @@ fn illustrations(
         evaluations,
     };
     folder.write_json("figures/width_sweep.json", &sweep)?;
-    let period = loop_waveform(job.setup, design, SAMPLES).map(|waveform| PeriodRecord {
-        id: best.id.clone(),
-        frequency_hz: job.setup.frequency_hz,
-        supply_v: design.supply_v,
-        dead_time: design.dead_time,
-        waveform,
-    });
-    if let Some(period) = &period {
-        folder.write_json("figures/period.json", period)?;
+    let period = |record: &DesignRecord, samples: usize| {
+        let design = &record.evaluation.design;
+        let waveform = loop_waveform(job.setup, design, samples)?;
+        Some(PeriodRecord {
+            id: record.id.clone(),
+            frequency_hz: job.setup.frequency_hz,
+            supply_v: design.supply_v,
+            dead_time: design.dead_time,
+            waveform,
+        })
+    };
+    if let Some(period) = period(best, SAMPLES) {
+        folder.write_json("figures/period.json", &period)?;
     }
-    Ok((Some(sweep), period))
+    let mut cells = BTreeSet::new();
+    let chosen: Vec<&DesignRecord> = summary
+        .front
+        .iter()
+        .filter(|d| cells.insert(d.cell))
+        .take(MOST_WAVEFORMS)
+        .collect();
+    let waveforms: Vec<PeriodRecord> = chosen
+        .par_iter()
+        .filter_map(|d| period(d, REPORT_SAMPLES))
+        .collect();
+    folder.write_json("waveforms.json", &waveforms)
 }

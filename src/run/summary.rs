@@ -5,20 +5,21 @@
 use super::RunError;
 use super::folder::{RunFolder, read_cell};
 use super::records::{CellRecord, DesignList, DesignRecord, HypervolumeReference, Residuals};
-use super::table::csv;
+use super::table;
 use crate::evaluate::Setup;
 use crate::numerics::hypervolume::hypervolume;
 use crate::search::front::{Costs, costs, non_dominated};
 use crate::search::space;
 use crate::study::{Objective, Space, Study};
 use crate::technology::Inductor;
-use serde::Serialize;
+use serde::{Deserialize, Serialize};
+use std::path::Path;
 
 /// Square millimetres in a square metre: the unit of area in a hypervolume.
 const MM2: f64 = 1e6;
 
 /// A line of `cells.csv`.
-#[derive(Debug, Clone, Serialize)]
+#[derive(Debug, Clone, Serialize, Deserialize)]
 pub struct CellLine {
     /// Index.
     pub cell: usize,
@@ -34,6 +35,25 @@ pub struct CellLine {
     front_size: usize,
     hypervolume: f64,
     evaluations: u64,
+}
+
+/// Reads `cells.csv`.
+///
+/// # Errors
+/// [`RunError::Damaged`] when it is none, or the system's.
+pub fn read_cells(path: &Path) -> Result<Vec<CellLine>, RunError> {
+    let name = path.join("cells.csv");
+    let text = std::fs::read(&name).map_err(|error| RunError::Io {
+        path: name.clone(),
+        error,
+    })?;
+    let lines: Result<Vec<CellLine>, csv::Error> = csv::Reader::from_reader(text.as_slice())
+        .deserialize()
+        .collect();
+    lines.map_err(|e| RunError::Damaged {
+        path: name,
+        reason: format!("is damaged: {e}"),
+    })
 }
 
 /// What all finished cells amount to.
@@ -194,8 +214,8 @@ pub fn summarise(
             .then(a.id.cmp(&b.id))
     });
     let path = folder.path();
-    folder.write("cells.csv", &csv(&path.join("cells.csv"), &lines)?)?;
-    folder.write("front.csv", &csv(&path.join("front.csv"), &front)?)?;
+    folder.write("cells.csv", &table::csv(&path.join("cells.csv"), &lines)?)?;
+    folder.write("front.csv", &table::csv(&path.join("front.csv"), &front)?)?;
     let list = DesignList { designs: front };
     folder.write_json("front.json", &list)?;
     let front = list.designs;

@@ -21,7 +21,7 @@ use std::sync::atomic::AtomicBool;
 use std::time::Instant;
 use widefront::evaluate::Setup;
 use widefront::numerics::hypervolume::hypervolume;
-use widefront::run::session::hypervolume_reference;
+use widefront::run::summary::hypervolume_reference;
 use widefront::search::cell::{best_efficiencies, point_costs, search_cell};
 use widefront::search::front::{Costs, non_dominated, spread};
 use widefront::search::problem::{Goal, SliceProblem};
