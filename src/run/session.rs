@@ -337,7 +337,7 @@ fn close(record: &mut RunRecord, summary: &Summary) {
     record.residuals = summary.residuals;
 }
 
-/// What figures and report show beside the fronts: losses against width around the most efficient design, one period of
+/// What figures and report show beside the fronts: each supply's front, losses against width around the most efficient design, one period of
 /// it, and of the most efficient design of each cell on the overall front.
 fn illustrations(job: &Job<'_>, folder: &RunFolder, summary: &Summary) -> Result<(), RunError> {
     /// Widths of the sweep, from a fifth to five times the design's.
@@ -349,6 +349,7 @@ fn illustrations(job: &Job<'_>, folder: &RunFolder, summary: &Summary) -> Result
     let Some(best) = summary.front.first() else {
         return Ok(());
     };
+    folder.write_json("figures/supplies.json", &summary.supplies)?;
     let design = &best.evaluation.design;
     let widths: Vec<f64> = (0..WIDTHS)
         .map(|i| design.nmos_width_m * 5f64.powf(2.0 * i as f64 / (WIDTHS - 1) as f64 - 1.0))
