@@ -154,7 +154,7 @@ fn law_fingers_keep_the_rules_and_the_width() {
             assert!((steps - steps.round()).abs() < 1e-6, "{cut:?}");
             assert!(cut.finger_m >= rules.least_finger_m - ROUNDING, "{cut:?}");
             assert!(cut.finger_m <= rules.most_finger_m + ROUNDING, "{cut:?}");
-            assert!(cut.fingers <= rules.most_fingers && (!even || cut.fingers % 2 == 0));
+            assert!(cut.fingers <= rules.most_fingers && (!even || cut.fingers.is_multiple_of(2)));
             assert!((cut.width_m - cut.finger_m * n * m).abs() < ROUNDING);
             let off = (cut.width_m - width_m).abs();
             assert!(off <= 0.5 * rules.grid_m * n * m + ROUNDING, "{cut:?}");

@@ -86,19 +86,21 @@ pub fn moved(change: &Change) -> String {
         return NONE.to_owned();
     };
     let name = change.figure.as_str();
-    if a == b {
-        return "none".to_owned();
-    }
-    if name.ends_with("_dbm") || name.ends_with("_dbc") {
-        format!("{:+.4} dB", b - a)
+    let (by, unit) = if name.ends_with("_dbm") || name.ends_with("_dbc") {
+        (b - a, "dB")
     } else if SHARES.contains(&name) {
-        format!("{:+.4} points", 100.0 * (b - a))
+        (100.0 * (b - a), "points")
     } else if ABOUT_ZERO.contains(&name) {
-        shown(name, b - a)
+        return shown(name, b - a);
     } else if a != 0.0 {
-        format!("{:+.4} %", 100.0 * (b - a) / a.abs())
+        (100.0 * (b - a) / a.abs(), "%")
     } else {
-        NONE.to_owned()
+        return NONE.to_owned();
+    };
+    if by.abs() < 0.5e-4 {
+        "none".to_owned()
+    } else {
+        format!("{by:+.4} {unit}")
     }
 }
 

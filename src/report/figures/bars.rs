@@ -61,7 +61,7 @@ pub fn draw<B: DrawingBackend>(
         let value = step * f64::from(count);
         area.draw(&PathElement::new(
             [(x(value), TOP), (x(value), BOTTOM)],
-            FAINT.stroke_width(2),
+            FAINT,
         ))
         .map_err(reason)?;
         area.draw(&Text::new(

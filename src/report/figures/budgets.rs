@@ -8,8 +8,10 @@ use crate::budget::LOSS_NAMES;
 use plotters::coord::Shift;
 use plotters::prelude::*;
 
-/// Losses drawn with a colour of their own; smaller ones are put together.
+/// Losses drawn with a colour of their own at most; the others are put together.
 const BANDS: usize = 7;
+/// Per cent of the total power below which a band cannot be seen.
+const SEEN: f64 = 0.3;
 
 /// Losses as shares of the total power; efficiency is what is left. A slightly negative loss (the drain's, near soft
 /// switching) is drawn as 0.
@@ -28,28 +30,28 @@ pub fn draw_losses<B: DrawingBackend>(
     let largest = |i: usize| shares.iter().map(|t| t[i]).fold(0.0, f64::max);
     let mut order: Vec<usize> = (0..LOSS_NAMES.len()).collect();
     order.sort_by(|&a, &b| largest(b).total_cmp(&largest(a)).then(a.cmp(&b)));
-    let (shown, rest) = order.split_at(BANDS);
+    let seen = order.iter().filter(|&&i| largest(i) > SEEN).count();
+    let (shown, rest) = order.split_at(seen.min(BANDS));
     let mut bands: Vec<Band> = shown
         .iter()
         .zip(CATEGORIES)
         .map(|(&i, colour)| (LOSS_NAMES[i].replace('_', " "), colour))
         .collect();
-    bands.push(("other".into(), CATEGORIES[BANDS]));
+    let other = |t: &[f64; 11]| rest.iter().map(|&i| t[i]).sum::<f64>();
+    if shares.iter().any(|t| other(t) > SEEN) {
+        bands.push(("other".into(), CATEGORIES[BANDS]));
+    }
     let rows: Vec<Row> = designs
         .iter()
         .zip(&shares)
         .map(|(c, t)| Row {
             name: c.lines(),
-            total: format!("η {:.1} %", 100.0 * c.figures.efficiency),
-            values: shown
-                .iter()
-                .map(|&i| t[i])
-                .chain([rest.iter().map(|&i| t[i]).sum()])
-                .collect(),
+            total: format!("η = {:.1} %", 100.0 * c.figures.efficiency),
+            values: shown.iter().map(|&i| t[i]).chain([other(t)]).collect(),
         })
         .collect();
     let frame = Frame {
-        heading: "Losses of designs along the overall front",
+        heading: "Losses of designs along the overall front, and efficiency η",
         axis: "loss (% of the total power)",
         end: Some(100.0),
     };

@@ -24,7 +24,7 @@ impl Chosen<'_> {
     }
 }
 
-/// The most efficient, the smallest, the strongest, and the most efficient from a quarter, half and three quarters of the
+/// The most efficient, the smallest, the one of most output power, and the most efficient from a quarter, half and three quarters of the
 /// way up the front's output powers (dBm) on; each design once, output power rising.
 pub fn chosen(designs: &[DesignRecord]) -> Vec<Chosen<'_>> {
     let known: Vec<(&str, &Figures)> = designs
@@ -45,7 +45,7 @@ pub fn chosen(designs: &[DesignRecord]) -> Vec<Chosen<'_>> {
     let mut picks = vec![
         (best(&efficiency, low), "most efficient".to_owned()),
         (best(&|f| -f.area_m2, low), "smallest".to_owned()),
-        (best(&power, low), "strongest".to_owned()),
+        (best(&power, low), "most power".to_owned()),
     ];
     for quarter in 1..4 {
         let from_dbm = low + 0.25 * f64::from(quarter) * (high - low);

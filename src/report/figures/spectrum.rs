@@ -53,11 +53,8 @@ pub fn draw<B: DrawingBackend>(area: &DrawingArea<B, Shift>, input: &FigureInput
     let first = (floor / step).ceil() as i32;
     for count in first..=(ceiling / step).floor() as i32 {
         let dbc = step * f64::from(count);
-        area.draw(&PathElement::new(
-            [(LEFT, y(dbc)), (RIGHT, y(dbc))],
-            FAINT.stroke_width(2),
-        ))
-        .map_err(reason)?;
+        area.draw(&PathElement::new([(LEFT, y(dbc)), (RIGHT, y(dbc))], FAINT))
+            .map_err(reason)?;
         area.draw(&Text::new(
             format!("{dbc:.0}"),
             (LEFT - 12, y(dbc)),

@@ -73,7 +73,12 @@ pub fn draw<B: DrawingBackend>(
         let share = index as f64 / (supplies.len() - 1).max(1) as f64;
         // The palest end of the ramp would be lost on white.
         let colour = ramp(0.85 * share);
-        let name = format!("{:.3} V", front.supply_v);
+        let none = if front.points.is_empty() {
+            ": none"
+        } else {
+            ""
+        };
+        let name = format!("{:.3} V{none}", front.supply_v);
         let points = front.points.iter().map(at).collect();
         line(points, colour, 4, &name, slot as i32 + 1)?;
     }
