@@ -112,6 +112,38 @@ fn law_currents_agree_with_the_powers() {
 }
 
 #[test]
+fn law_metal_carries_the_larger_of_mean_and_rms() {
+    let (_room, sheet) = made();
+    let limit = number(&sheet, "rules.top_current_a_m");
+    let parts = [
+        "supply",
+        "ground",
+        "drain",
+        "inductor",
+        "series_capacitor",
+        "shunt_capacitor",
+        "antenna",
+    ];
+    for part in parts {
+        let current = &sheet["currents"][part];
+        let larger = number(current, "rms_a").max(number(current, "mean_a").abs());
+        assert!((number(current, "top_metal_m") * limit / larger - 1.0).abs() < EXACT);
+    }
+    // A strip between two fingers takes the current of both: 2/(n M) of the side's.
+    for (side, current) in [("nmos", "ground"), ("pmos", "supply")] {
+        let cut = &sheet["switches"][side]["fingers"];
+        let fingers = number(cut, "fingers") * number(cut, "devices");
+        let strip = 2.0 * number(&sheet["currents"][current], "rms_a") / fingers;
+        let needed = strip / number(&sheet, "rules.finger_current_a_m");
+        let metal = &sheet["strips"][side];
+        assert!((number(metal, "needed_m") / needed - 1.0).abs() < EXACT);
+        assert!(needed <= number(metal, "drawn_m") * (1.0 + EXACT));
+        let route = number(&sheet, "routing_resistance_ohm");
+        assert!(number(metal, "resistance_ohm") < route);
+    }
+}
+
+#[test]
 fn law_changes_are_of_the_drawn_stage() {
     let (_room, sheet) = made();
     let changes = sheet["changes"].as_array().unwrap();
@@ -141,6 +173,11 @@ fn regress_files_are_written_whole_and_the_same_each_time() {
     assert_eq!(once, read());
     let text = String::from_utf8(once[0].clone()).unwrap();
     for part in [
+        "## Circuit",
+        "Limits of the study",
+        "Currents of a leg",
+        "Loss budget",
+        "Assumptions",
         "Headline figures",
         "Voltages against ratings",
         "To be checked",
@@ -148,6 +185,12 @@ fn regress_files_are_written_whole_and_the_same_each_time() {
     ] {
         assert!(text.contains(part), "{part}");
     }
+    let mut table = csv::Reader::from_reader(once[1].as_slice());
+    let rows: Vec<csv::StringRecord> = table.records().map(Result::unwrap).collect();
+    let json: Value = serde_json::from_slice(&once[2]).unwrap();
+    let supply = json["evaluation"]["design"]["supply_v"].to_string();
+    let row = rows.iter().find(|r| &r[0] == "evaluation.design.supply_v");
+    assert_eq!(&row.unwrap()[1], supply);
     let drawing = String::from_utf8(once[3].clone()).unwrap();
     assert!(drawing.starts_with("<svg") && drawing.trim_end().ends_with("</svg>"));
     assert_eq!(
@@ -169,4 +212,26 @@ fn regress_unknown_designs_and_damaged_runs() {
     fs::write(run.join("front.json"), "{").unwrap();
     let damaged = sheet(&run, &id).code(1);
     assert!(stderr(&damaged).contains("front.json"));
+    fs::write(run.join("run.json"), "{").unwrap();
+    let damaged = sheet(&run, &id).code(1);
+    assert!(stderr(&damaged).contains("run.json"));
+    assert!(!run.join("sheets").exists());
+}
+
+#[test]
+fn regress_a_technology_without_rules_is_told_what_it_lacks() {
+    let (_room, run) = copied_run();
+    let id = first_design(&run);
+    let name = run.join("run.json");
+    let mut record: Value = serde_json::from_slice(&fs::read(&name).unwrap()).unwrap();
+    let rules = record["technology"]["rules"].as_object_mut().unwrap();
+    rules.remove("grid_m");
+    rules.remove("capacitor_unit_f");
+    fs::write(&name, record.to_string()).unwrap();
+    let refused = sheet(&run, &id).code(2);
+    let told = String::from_utf8_lossy(&refused.get_output().stderr).into_owned();
+    assert!(
+        told.contains("[rules] needs grid, capacitor_unit\n  help:"),
+        "{told}"
+    );
 }

@@ -5,7 +5,7 @@ pub mod page;
 
 use crate::run::RunError;
 use crate::run::folder::{RunFolder, read_front, read_optional, read_run};
-use crate::run::records::{PeriodRecord, WidthSweep};
+use crate::run::records::{PeriodRecord, SupplyFront, WidthSweep};
 use crate::run::summary::read_cells;
 use figures::{FigureError, FigureInput};
 use page::PageInput;
@@ -35,11 +35,17 @@ pub fn write(folder: &RunFolder) -> Result<PathBuf, ReportError> {
     let sweep: Option<WidthSweep> = read_optional(path, "figures/width_sweep.json")?;
     let period: Option<PeriodRecord> = read_optional(path, "figures/period.json")?;
     let periods: Option<Vec<PeriodRecord>> = read_optional(path, "waveforms.json")?;
+    let supplies: Option<Vec<SupplyFront>> = read_optional(path, "figures/supplies.json")?;
+    let limit = |name: &str| run["study"]["limits"][name].as_f64();
     let best = figures::best_cells(&cells);
     let input = FigureInput {
         title: run["study"]["title"].as_str().unwrap_or_default(),
         designs: &front.designs,
         cells: &best,
+        supplies: supplies.as_deref().unwrap_or_default(),
+        frequency_hz: run["study"]["frequency_hz"].as_f64().unwrap_or_default(),
+        second_harmonic_limit_dbc: limit("second_harmonic_dbc"),
+        third_harmonic_limit_dbc: limit("third_harmonic_dbc"),
         sweep: sweep.as_ref(),
         period: period.as_ref(),
     };

@@ -6,6 +6,7 @@ pub mod records;
 mod same;
 pub mod session;
 pub mod summary;
+mod supplies;
 mod table;
 pub mod variant;
 

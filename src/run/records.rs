@@ -154,3 +154,23 @@ pub struct PeriodRecord {
     /// The samples, from the turn-on of P.
     pub waveform: Waveform,
 }
+
+/// One point of a supply's front, for a figure.
+#[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
+pub struct SupplyPoint {
+    /// Id of the design.
+    pub id: String,
+    /// P_out, dBm.
+    pub output_power_dbm: f64,
+    /// P_out/P_total.
+    pub efficiency: f64,
+}
+
+/// The front of efficiency and output power at one supply, over every loaded Q and area.
+#[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
+pub struct SupplyFront {
+    /// V_DD, V.
+    pub supply_v: f64,
+    /// The front, output power rising.
+    pub points: Vec<SupplyPoint>,
+}

@@ -384,7 +384,7 @@ fn close(record: &mut RunRecord, summary: &Summary) {
     record.residuals = summary.residuals;
 }
 
-/// What figures and report show beside the fronts: losses against width around the most efficient design, one period of
+/// What figures and report show beside the fronts: each supply's front, losses against width around the most efficient design, one period of
 /// it, and of the most efficient design of each cell on the overall front.
 fn illustrations(job: &Job<'_>, folder: &RunFolder, summary: &Summary) -> Result<(), RunError> {
     /// Widths of the sweep, from a fifth to five times the design's.
@@ -396,6 +396,7 @@ fn illustrations(job: &Job<'_>, folder: &RunFolder, summary: &Summary) -> Result
     let Some(best) = summary.front.first() else {
         return Ok(());
     };
+    folder.write_json("figures/supplies.json", &summary.supplies)?;
     let a_variant = (job.study.space.as_ref()).map_or(1, |s| space::cells(s).len());
     let setup_of = |record: &DesignRecord| &job.variants[record.cell / a_variant].setup;
     let design = &best.evaluation.design;

@@ -4,7 +4,10 @@
 
 use super::RunError;
 use super::folder::{RunFolder, read_cell};
-use super::records::{CellRecord, DesignList, DesignRecord, HypervolumeReference, Residuals};
+use super::records::{
+    CellRecord, DesignList, DesignRecord, HypervolumeReference, Residuals, SupplyFront,
+};
+use super::supplies;
 use super::table;
 use crate::evaluate::Setup;
 use crate::numerics::hypervolume::hypervolume;
@@ -78,6 +81,8 @@ pub struct Summary {
     pub hypervolume: f64,
     /// Spread of the residuals of all cells' points.
     pub residuals: Option<Residuals>,
+    /// Fronts of efficiency and output power, a supply each, rising; none where the supply is free.
+    pub supplies: Vec<SupplyFront>,
 }
 
 /// What finished cells amount to, for progress.
@@ -200,6 +205,7 @@ pub fn summarise(
     let mut lines = Vec::new();
     let mut residuals = Vec::new();
     let mut evaluations = 0;
+    let mut supplies = Vec::new();
     for cell in cells {
         let Some(record) = read_cell(folder.path(), cell)? else {
             continue;
@@ -207,6 +213,7 @@ pub fn summarise(
         evaluations += record.evaluations;
         residuals.extend(record.designs.iter().map(|d| (d.residual, d.certified)));
         lines.push(line(&record));
+        supplies::add(&mut supplies, &record);
         front.extend(record.designs);
         if front.len() > 2 * kept + BATCH {
             front = filtered(search, front);
@@ -234,6 +241,7 @@ pub fn summarise(
         cells: lines,
         evaluations,
         residuals: spread_of(residuals),
+        supplies,
     })
 }
 

@@ -25,8 +25,8 @@ pub struct Block {
     pub kind: Kind,
     /// Its name.
     pub label: String,
-    /// Its measure in words.
-    pub detail: String,
+    /// Its measure in words, a line each.
+    pub detail: Vec<String>,
     /// Left edge.
     pub x: f64,
     /// Upper edge.
@@ -55,7 +55,7 @@ impl Block {
         Self {
             kind,
             label,
-            detail: String::new(),
+            detail: Vec::new(),
             x: 0.0,
             y: 0.0,
             width: f64::from(columns) * cell_width,
@@ -80,13 +80,13 @@ impl Block {
         let height = f.finger_m * 1e6 * width_area_m / pitch_m;
         Self {
             fingers: f.fingers,
-            detail: format!(
+            detail: vec![format!(
                 "{} = {} × {} × {}",
                 micrometres(f.width_m),
                 f.devices,
                 f.fingers,
                 micrometres(f.finger_m)
-            ),
+            )],
             active: (pitch_m / width_area_m).min(1.0),
             ..Self::array(kind, label, f.devices, width, height)
         }
@@ -96,11 +96,10 @@ impl Block {
     pub fn capacitor(label: String, capacitor: &DrawnCapacitor) -> Self {
         let side = capacitor.unit_area_m2.sqrt() * 1e6;
         Self {
-            detail: format!(
-                "{} in {} units",
+            detail: vec![
                 format(capacitor.units.capacitance_f, "F"),
-                capacitor.units.units
-            ),
+                format!("{} units", capacitor.units.units),
+            ],
             ..Self::array(Kind::Capacitor, label, capacitor.units.units, side, side)
         }
     }

@@ -204,4 +204,74 @@ mod tests {
         assert!((m.mean - std::f64::consts::FRAC_1_PI).abs() < TRAPEZOIDS);
         assert!((m.square - 0.25).abs() < TRAPEZOIDS && (m.peak - 1.0).abs() < TRAPEZOIDS);
     }
+
+    const RULES: DrawingRules = DrawingRules {
+        grid_m: 5e-9,
+        least_finger_m: 0.5e-6,
+        most_finger_m: 10e-6,
+        most_fingers: 100,
+        finger_pitch_m: 0.5e-6,
+        finger_metal_width_m: 0.2e-6,
+        finger_sheet_resistance_ohm: 0.03,
+        finger_current_a_m: 5e3,
+        top_current_a_m: 16e3,
+        current_temperature_k: 378.15,
+        capacitor_unit_f: 75e-15,
+    };
+
+    /// The dissipation of every strip of two devices of six fingers added up piece by piece, a piece carrying what has
+    /// gathered by its middle, is I² times the resistance stated.
+    #[test]
+    fn law_strips_dissipate_what_their_resistance_says() {
+        /// The midpoint rule on a square in a thousand pieces is off by 1/(4·1000²).
+        const PIECES: u32 = 1000;
+        const MIDPOINTS: f64 = 1e-6;
+        let cut = Fingers {
+            wanted_width_m: 48e-6,
+            width_m: 48e-6,
+            finger_m: 4e-6,
+            fingers: 6,
+            devices: 2,
+        };
+        let total_a = 0.03;
+        let each_a = total_a / 12.0;
+        let piece_ohm = 0.03 * 20.0 / f64::from(PIECES);
+        // Source, drain, source, drain, source, drain, source; the ends serve one finger.
+        let served = [1.0, 2.0, 2.0, 2.0, 2.0, 2.0, 1.0];
+        let mut power_w = 0.0;
+        for strip_a in served.map(|fingers| fingers * each_a) {
+            for piece in 0..PIECES {
+                let gathered = strip_a * (f64::from(piece) + 0.5) / f64::from(PIECES);
+                power_w += 2.0 * gathered * gathered * piece_ohm;
+            }
+        }
+        let strip = strip(&RULES, &cut, 1, total_a);
+        let stated_w = total_a * total_a * strip.resistance_ohm;
+        assert!((stated_w / power_w - 1.0).abs() < MIDPOINTS);
+        assert!((strip.rms_a / (2.0 * each_a) - 1.0).abs() < 1e-12);
+    }
+
+    /// At the widest finger the strip is full, or its resistance takes half of the budget.
+    #[test]
+    fn law_the_widest_finger_uses_up_current_or_budget() {
+        /// (4/3)/n stands for (4n − 2)/(3n²).
+        const MANY_FINGERS: f64 = 0.02;
+        let width_m = 800e-6;
+        let at = |rms_a, route_ohm| {
+            let finger_m = most_finger_m(&RULES, width_m, 1, rms_a, route_ohm);
+            let fingers = (width_m / finger_m / 2.0).round() as u32;
+            let cut = Fingers {
+                wanted_width_m: width_m,
+                width_m,
+                finger_m,
+                fingers,
+                devices: 2,
+            };
+            strip(&RULES, &cut, 1, rms_a)
+        };
+        let full = at(0.2, 0.0);
+        assert!((full.needed_m / full.drawn_m - 1.0).abs() < MANY_FINGERS);
+        let half = at(1e-3, 0.02);
+        assert!((half.resistance_ohm / 0.01 - 1.0).abs() < MANY_FINGERS);
+    }
 }

@@ -7,7 +7,7 @@ use super::records::{DrawnSpiral, Pair, Sheet};
 use crate::quantity::format;
 
 /// Left free between blocks for wires and guard rings.
-const GAP: f64 = 10.0;
+pub const GAP: f64 = 10.0;
 
 /// A spiral in its place.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -69,10 +69,10 @@ pub fn floorplan(sheet: &Sheet) -> Floorplan {
             (top - GAP - half, "decoupling"),
             (top + core_height + GAP, "decoupling"),
         ] {
-            let plain = Block::plain(Kind::Decoupling, name(part), 0.5 * share_m2, column);
+            let plain = Block::plain(Kind::Decoupling, part.to_owned(), 0.5 * share_m2, column);
             let share_f = 0.5 * sheet.decoupling.capacitance_f / f64::from(sheet.legs);
             plan.blocks.push(Block {
-                detail: format(share_f, "F"),
+                detail: vec![format(share_f, "F")],
                 ..plain.at(0.0, y)
             });
         }

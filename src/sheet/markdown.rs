@@ -1,13 +1,12 @@
 //! The sheet as Markdown, for people.
 
 use super::currents::Current;
-use super::records::{Change, DrawnCapacitor, DrawnDevice, Sheet};
+use super::names::{NONE, moved, named, shown};
+use super::records::{DrawnCapacitor, DrawnDevice, Sheet};
 use crate::budget::LOSS_NAMES;
 use crate::quantity::{format, format_in, micrometres};
+use crate::study::Network;
 use std::fmt::Write;
-
-/// What stands where a figure does not exist.
-const NONE: &str = "–";
 
 /// The whole text. `drawing` is the file name of the drawing beside it.
 pub fn markdown(sheet: &Sheet, drawing: &str) -> String {
@@ -31,7 +30,9 @@ pub fn markdown(sheet: &Sheet, drawing: &str) -> String {
         list(&mut text, "Cautions", &sheet.cautions);
     }
     let _ = write!(text, "![The stage to scale]({drawing})\n\n");
+    circuit(&mut text, sheet);
     headline(&mut text, sheet);
+    limits(&mut text, sheet);
     devices(&mut text, sheet);
     currents(&mut text, sheet);
     passives(&mut text, sheet);
@@ -69,31 +70,62 @@ fn optional(value: Option<f64>, show: impl Fn(f64) -> String) -> String {
     value.map_or(NONE.to_owned(), show)
 }
 
-/// A name of the JSON and its value in words.
-fn shown(name: &str, value: f64) -> String {
-    let units = [
-        ("_dbm", "dBm"),
-        ("_dbc", "dBc"),
-        ("_w", "W"),
-        ("_ohm", "ohm"),
-        ("_f", "F"),
-        ("_h", "H"),
-        ("_hz", "Hz"),
-        ("_v", "V"),
-        ("_a", "A"),
-        ("_m", "m"),
-    ];
-    if name.ends_with("_m2") {
-        return format_in(value, "mm^2");
+/// The circuit in words, for who has nothing but the sheet.
+fn circuit(text: &mut String, sheet: &Sheet) {
+    let design = &sheet.evaluation.design;
+    let _ = write!(
+        text,
+        "## Circuit\n\nEach leg: {} driver stages swinging over {} drive the gates of N (to ground) and P (to the supply){}. \
+         Both are off for {:.2} % of a period ({}) at each transition. Their common drain feeds the series capacitor, its \
+         bottom plate on the drain, then the spiral, then the antenna of {}",
+        design.stages,
+        format(sheet.swing_v, "V"),
+        if sheet.stack == 2 {
+            ", each under a cascode of the same width with its gate at half the supply"
+        } else {
+            ""
+        },
+        100.0 * design.dead_time,
+        format(design.dead_time / sheet.frequency_hz, "s"),
+        format(sheet.antenna_resistance_ohm, "ohm"),
+    );
+    if sheet.legs == 2 {
+        text.push_str(", whose other side the second leg feeds half a period later");
     }
-    let unit = units.iter().find(|(end, _)| name.ends_with(end));
-    match unit {
-        Some((_, "dBm")) => format!("{value:.3} dBm"),
-        Some((_, "dBc")) => format!("{value:.2} dBc"),
-        Some((_, "m")) => micrometres(value),
-        Some((_, unit)) => format(value, unit),
-        None => format!("{value:.5}"),
+    if sheet.network == Network::LowPass {
+        text.push_str("; the shunt capacitor lies across the antenna");
     }
+    let _ = write!(
+        text,
+        ". Behind the antenna's port {} dB are lost.\n\n",
+        sheet.antenna_loss_db
+    );
+}
+
+fn limits(text: &mut String, sheet: &Sheet) {
+    if sheet.limits.is_empty() {
+        return;
+    }
+    text.push_str("## Limits of the study\n\n");
+    let rows: Vec<Vec<String>> = sheet
+        .limits
+        .iter()
+        .map(|l| {
+            let show = |v| shown(&l.figure, v);
+            vec![
+                named(&l.figure),
+                optional(l.at_least, show),
+                optional(l.at_most, show),
+                optional(l.drawn, show),
+                if l.kept { "yes" } else { "**no**" }.into(),
+            ]
+        })
+        .collect();
+    table(
+        text,
+        &["figure", "at least", "at most", "drawn", "kept"],
+        &rows,
+    );
 }
 
 fn headline(text: &mut String, sheet: &Sheet) {
@@ -114,7 +146,7 @@ fn headline(text: &mut String, sheet: &Sheet) {
         .map(|c| {
             let show = |v| shown(&c.figure, v);
             vec![
-                c.figure.clone(),
+                named(&c.figure),
                 optional(c.searched, show),
                 optional(c.drawn, show),
                 moved(c),
@@ -122,25 +154,6 @@ fn headline(text: &mut String, sheet: &Sheet) {
         })
         .collect();
     table(text, &["figure", "searched", "drawn", "change"], &rows);
-}
-
-/// Figures that may be about 0, where a relative change says nothing.
-const ABOUT_ZERO: [&str; 2] = ["lowest_drain_v", "design.reactance"];
-
-/// Levels in decibels and what may be about 0 as a difference, all else relative.
-fn moved(change: &Change) -> String {
-    match (change.searched, change.drawn) {
-        (Some(a), Some(b))
-            if change.figure.ends_with("_dbm") || change.figure.ends_with("_dbc") =>
-        {
-            format!("{:+.4} dB", b - a)
-        }
-        (Some(a), Some(b)) if ABOUT_ZERO.contains(&change.figure.as_str()) => {
-            shown(&change.figure, b - a)
-        }
-        (Some(a), Some(b)) if a != 0.0 => format!("{:+.4} %", 100.0 * (b - a) / a.abs()),
-        _ => NONE.to_owned(),
-    }
 }
 
 fn device(name: String, d: &DrawnDevice) -> Vec<String> {
@@ -160,7 +173,8 @@ fn device(name: String, d: &DrawnDevice) -> Vec<String> {
 fn devices(text: &mut String, sheet: &Sheet) {
     text.push_str(
         "## Transistors and drivers of a leg\n\nW = finger × fingers × devices. Gates are what the driver charges over \
-         its swing, drains what a device puts on its output; on-resistances are those at no current, routes left out.\n\n",
+         its swing, drains what a device puts on its output; on-resistances are those at no current, routes left out (the headline's are at the \
+         current that flows, routes counted).\n\n",
     );
     let headings = [
         "device",
@@ -212,9 +226,9 @@ fn devices(text: &mut String, sheet: &Sheet) {
 }
 
 fn current(name: &str, c: &Current) -> Vec<String> {
-    // What is zero by the law of charge leaves rounding behind.
-    let rounding = 1e-9 * c.rms_a;
-    let mean = if c.mean_a.abs() < rounding {
+    // What is zero by the law of charge leaves behind what sampling loses.
+    let sampled = 1e-5 * c.rms_a;
+    let mean = if c.mean_a.abs() < sampled {
         0.0
     } else {
         c.mean_a
@@ -362,7 +376,7 @@ fn losses(text: &mut String, sheet: &Sheet) {
     let mut rows: Vec<Vec<String>> = LOSS_NAMES
         .iter()
         .zip(f.losses_w.terms())
-        .map(|(name, w)| row(name, w))
+        .map(|(name, w)| row(&name.replace('_', " "), w))
         .collect();
     rows.push(row("output power", f.output_power_w));
     rows.push(row("total power", f.total_power_w));

@@ -5,8 +5,11 @@ mod block;
 mod currents;
 mod drawing;
 mod floorplan;
+mod limits;
 mod markdown;
+mod names;
 mod records;
+mod shapes;
 mod snap;
 mod table;
 mod voltages;
@@ -206,10 +209,15 @@ pub fn sheet(
         legs: setup.legs,
         stack: setup.stack,
         device: study.stage.device.clone(),
+        network: study.stage.network,
+        antenna_resistance_ohm: setup.network.antenna_resistance_ohm,
+        antenna_loss_db: setup.antenna_loss_db,
+        swing_v: setup.swing_v(drawn.evaluation.design.supply_v),
         rules,
         width_area_m: setup.layout.width_area_m,
         routing_resistance_ohm: setup.layout.routing_resistance_ohm,
         changes: changes(searched, &drawn.evaluation),
+        limits: limits::limits(&setup.limits, &drawn.evaluation, drawn_figures),
         evaluation: drawn.evaluation.clone(),
         switches: pair(&made.snapped.switches, &drawn.switches),
         drivers: made

@@ -4,6 +4,7 @@ use super::currents::{Currents, Strip};
 use super::snap::{Fingers, Units};
 use super::voltages::Voltage;
 use crate::evaluate::{DeviceFigures, Evaluation};
+use crate::study::Network;
 use crate::technology::DrawingRules;
 use serde::{Deserialize, Serialize};
 
@@ -16,6 +17,21 @@ pub struct Change {
     pub searched: Option<f64>,
     /// As drawn.
     pub drawn: Option<f64>,
+}
+
+/// A limit of the study and what the drawn stage has.
+#[derive(Debug, Clone, PartialEq, Serialize, Deserialize)]
+pub struct Kept {
+    /// Name of the figure that is limited.
+    pub figure: String,
+    /// Lowest allowed, SI.
+    pub at_least: Option<f64>,
+    /// Highest allowed, SI.
+    pub at_most: Option<f64>,
+    /// As drawn; none where it does not exist.
+    pub drawn: Option<f64>,
+    /// Whether it is kept.
+    pub kept: bool,
 }
 
 /// One drawn transistor of a leg.
@@ -106,6 +122,14 @@ pub struct Sheet {
     pub stack: u32,
     /// Transistor pair.
     pub device: String,
+    /// Load network.
+    pub network: Network,
+    /// Antenna (differential with two legs), Ω.
+    pub antenna_resistance_ohm: f64,
+    /// Loss behind the antenna's port, dB.
+    pub antenna_loss_db: f64,
+    /// Swing of the drivers V, V.
+    pub swing_v: f64,
     /// The rules snapped to.
     pub rules: DrawingRules,
     /// a_w, the area a width of transistor, m.
@@ -114,6 +138,8 @@ pub struct Sheet {
     pub routing_resistance_ohm: f64,
     /// Headline figures before and after.
     pub changes: Vec<Change>,
+    /// Limits of the study.
+    pub limits: Vec<Kept>,
     /// The drawn stage.
     pub evaluation: Evaluation,
     /// Output switches of a leg; a stacked side has two of each.

@@ -1,5 +1,6 @@
 //! Assumptions, cautions, and what others must check.
 
+use super::names::named;
 use super::records::Sheet;
 use crate::quantity::{format, format_in};
 
@@ -24,6 +25,9 @@ pub fn assumptions(sheet: &Sheet, fixed_inductor: bool) -> Vec<String> {
              widths take the larger of mean and RMS against the technology's limits, stated for {}.",
             format_in(sheet.rules.current_temperature_k, "degC")
         ),
+        "Peaks of supply and ground are those of linear switches that take over a charged drain; a real device saturates \
+         and carries less for longer, the charge and the mean stay."
+            .to_owned(),
         format!(
             "The drain strips and source strips along the fingers are {} wide, fed at one end, current gathering evenly; \
              neighbouring fingers share them. Their resistance has to fit in the routing resistance of {} a leg.",
@@ -125,7 +129,7 @@ pub fn cautions(sheet: &Sheet) -> Vec<String> {
         {
             list.push(format!(
                 "Snapping moved {} by {:+.2} %.",
-                change.figure,
+                named(&change.figure),
                 100.0 * (b - a) / a.abs()
             ));
         }

@@ -1,13 +1,18 @@
 //! Figures of a run as SVG and PNG, the same drawing for both, readable at half a page.
 
+mod bars;
+mod budgets;
+mod chosen;
 mod fitted;
 mod front;
 mod losses;
 mod map;
 mod period;
+mod spectrum;
 mod style;
+mod supplies;
 
-use crate::run::records::{DesignRecord, PeriodRecord, WidthSweep};
+use crate::run::records::{DesignRecord, PeriodRecord, SupplyFront, WidthSweep};
 use crate::run::summary::CellLine;
 pub use fitted::{DeviceFit, MeasuredPoint, Series};
 use plotters::backend::{BitMapBackend, DrawingBackend, SVGBackend};
@@ -47,6 +52,14 @@ pub struct FigureInput<'a> {
     pub designs: &'a [DesignRecord],
     /// Every cell: loaded Q, supply, best efficiency.
     pub cells: &'a [CellBest],
+    /// Fronts by supply; empty where the supply is free.
+    pub supplies: &'a [SupplyFront],
+    /// Carrier, Hz.
+    pub frequency_hz: f64,
+    /// The study's limit, dBc.
+    pub second_harmonic_limit_dbc: Option<f64>,
+    /// The study's limit, dBc.
+    pub third_harmonic_limit_dbc: Option<f64>,
     /// Losses against width around one design.
     pub sweep: Option<&'a WidthSweep>,
     /// One period of that design.
@@ -101,6 +114,12 @@ pub fn write_all(folder: &Path, input: &FigureInput<'_>) -> Result<Vec<PathBuf>,
     let mut files = Vec::new();
     if !input.designs.is_empty() {
         files.extend(write(folder, "front", Shape::Front(input))?);
+        files.extend(write(folder, "budgets", Shape::Budgets(input))?);
+        files.extend(write(folder, "areas", Shape::Areas(input))?);
+        files.extend(write(folder, "spectrum", Shape::Spectrum(input))?);
+    }
+    if input.supplies.iter().any(|s| !s.points.is_empty()) {
+        files.extend(write(folder, "supplies", Shape::Supplies(input))?);
     }
     if map::is_grid(input.cells) {
         files.extend(write(folder, "map", Shape::Map(input))?);
@@ -127,6 +146,10 @@ pub fn write_fit(folder: &Path, name: &str, fit: &DeviceFit) -> Result<[PathBuf;
 #[derive(Clone, Copy)]
 enum Shape<'a> {
     Front(&'a FigureInput<'a>),
+    Budgets(&'a FigureInput<'a>),
+    Areas(&'a FigureInput<'a>),
+    Spectrum(&'a FigureInput<'a>),
+    Supplies(&'a FigureInput<'a>),
     Map(&'a FigureInput<'a>),
     Losses(&'a WidthSweep),
     Period(&'a PeriodRecord),
@@ -137,6 +160,10 @@ fn draw<B: DrawingBackend>(area: &DrawingArea<B, Shift>, shape: Shape<'_>) -> Dr
     area.fill(&plotters::style::WHITE).map_err(reason)?;
     match shape {
         Shape::Front(input) => front::draw(area, input),
+        Shape::Budgets(input) => budgets::draw_losses(area, input),
+        Shape::Areas(input) => budgets::draw_areas(area, input),
+        Shape::Spectrum(input) => spectrum::draw(area, input),
+        Shape::Supplies(input) => supplies::draw(area, input.title, input.supplies),
         Shape::Map(input) => map::draw(area, input),
         Shape::Losses(sweep) => losses::draw(area, sweep),
         Shape::Period(record) => period::draw(area, record),
