@@ -1,85 +1,16 @@
-//! The front's filter and hypervolume on problems whose fronts are printed, and gradients against differences.
+//! The search's problem: gradients against differences.
 
 use proptest::prelude::*;
-use std::f64::consts::PI;
 use std::path::Path;
 use std::sync::LazyLock;
 use widefront::evaluate::Setup;
-use widefront::numerics::hypervolume::hypervolume;
 use widefront::search::Context;
-use widefront::search::front::non_dominated;
 use widefront::search::problem::{Goal, SliceProblem};
 use widefront::search::quadratic::MOST_VARIABLES;
 use widefront::search::solver::{Assessment, Constrained, Linear};
 use widefront::search::space::{Slice, cells, slices};
 use widefront::study::{Objective, Space};
 use widefront::{study, technology};
-
-const SAMPLES: usize = 20_000;
-/// A staircase of N points misses about (its two spans)/2N of the area under a smooth front.
-const PLANE: f64 = 1e-4;
-
-/// Hypervolume of a sampled plane front at (1.1, 1.1), dominated samples filtered out first.
-fn plane_volume(front: impl Fn(f64) -> f64) -> f64 {
-    let points: Vec<[f64; 3]> = (0..=SAMPLES)
-        .map(|i| {
-            let x = i as f64 / SAMPLES as f64;
-            [x, front(x), 0.0]
-        })
-        .collect();
-    let kept: Vec<[f64; 2]> = non_dominated(&points)
-        .into_iter()
-        .map(|i| [points[i][0], points[i][1]])
-        .collect();
-    hypervolume(&kept, &[1.1, 1.1])
-}
-
-/// ZDT1, 2 and 3 (Zitzler, Deb and Thiele 2000): exact hypervolumes at (1.1, 1.1), recomputed.
-#[test]
-fn published_zdt_fronts() {
-    for (volume, exact) in [
-        (plane_volume(|x| 1.0 - x.sqrt()), 0.876667),
-        (plane_volume(|x| 1.0 - x * x), 0.543333),
-        (
-            plane_volume(|x| 1.0 - x.sqrt() - x * (10.0 * PI * x).sin()),
-            1.331762909,
-        ),
-    ] {
-        assert!(
-            volume <= exact + 1e-6 && exact - volume < PLANE,
-            "{volume} {exact}"
-        );
-    }
-}
-
-/// DTLZ1 and 2 (Deb and others 2002): exact hypervolumes at 1.1³, recomputed; a grid of n × n points of a surface misses
-/// a few n-ths of it.
-#[test]
-fn published_dtlz_fronts() {
-    const GRID: usize = 150;
-    let surface = |point: &dyn Fn(f64, f64) -> [f64; 3]| {
-        let at = |i: usize| i as f64 / GRID as f64;
-        let points: Vec<[f64; 3]> = (0..=GRID * GRID + 2 * GRID)
-            .map(|k| point(at(k % (GRID + 1)), at(k / (GRID + 1))))
-            .collect();
-        let kept: Vec<[f64; 3]> = non_dominated(&points)
-            .into_iter()
-            .map(|i| points[i])
-            .collect();
-        hypervolume(&kept, &[1.1; 3])
-    };
-    let plane = surface(&|a, b| [0.5 * a * b, 0.5 * a * (1.0 - b), 0.5 * (1.0 - a)]);
-    let sphere = surface(&|a, b| {
-        let (s, t) = (0.5 * PI * a, 0.5 * PI * b);
-        [s.cos() * t.cos(), s.cos() * t.sin(), s.sin()]
-    });
-    for (volume, exact, missing) in [(plane, 1.310166667, 0.003), (sphere, 0.807401224, 0.015)] {
-        assert!(
-            volume < exact && exact - volume < missing,
-            "{volume} {exact}"
-        );
-    }
-}
 
 struct Fixture {
     setup: Setup,
