@@ -1,10 +1,14 @@
-//! The search's problem: gradients against differences.
+//! Fronts: gradients against differences, no dominated points, hypervolume against counted cubes.
 
 use proptest::prelude::*;
 use std::path::Path;
 use std::sync::LazyLock;
 use widefront::evaluate::Setup;
+use widefront::numerics::hypervolume::hypervolume;
+use widefront::run::folder::{read_cell, read_front};
+use widefront::run::records::DesignRecord;
 use widefront::search::Context;
+use widefront::search::front::{Costs, costs, dominates, non_dominated};
 use widefront::search::problem::{Goal, SliceProblem};
 use widefront::search::quadratic::MOST_VARIABLES;
 use widefront::search::solver::{Assessment, Constrained, Linear};
@@ -79,4 +83,65 @@ proptest! {
             }
         }
     }
+
+    /// The hypervolume of points on whole numbers is the count of unit cubes that one of them dominates.
+    #[test]
+    fn law_hypervolume_is_counted_cubes(
+        points in proptest::collection::vec([0u8..7, 0u8..7, 0u8..7], 0..40),
+    ) {
+        const SIDE: u8 = 6;
+        let cubes = (0..SIDE).flat_map(|x| (0..SIDE).flat_map(move |y| (0..SIDE).map(move |z| [x, y, z])));
+        let below = |p: &[u8; 3], cube: &[u8; 3]| p.iter().zip(cube).all(|(p, c)| p <= c);
+        let count = cubes.filter(|cube| points.iter().any(|p| below(p, cube))).count();
+        let points: Vec<[f64; 3]> = points.iter().map(|p| p.map(f64::from)).collect();
+        // Sums of whole numbers are exact.
+        prop_assert_eq!(hypervolume(&points, &[f64::from(SIDE); 3]), count as f64);
+        let kept: Vec<[f64; 3]> = non_dominated(&points).into_iter().map(|i| points[i]).collect();
+        prop_assert_eq!(hypervolume(&kept, &[f64::from(SIDE); 3]), count as f64);
+        let plane: Vec<[f64; 2]> = kept.iter().map(|p| [p[0], p[1]]).collect();
+        let columns = (0..SIDE).flat_map(|x| (0..SIDE).map(move |y| [x, y].map(f64::from)));
+        let area = columns.filter(|c| plane.iter().any(|p| p[0] <= c[0] && p[1] <= c[1])).count();
+        prop_assert_eq!(hypervolume(&plane, &[f64::from(SIDE); 2]), area as f64);
+        let line = points.iter().map(|p| p[0]).fold(f64::from(SIDE), f64::min);
+        let ends: Vec<[f64; 1]> = points.iter().map(|p| [p[0]]).collect();
+        prop_assert_eq!(hypervolume(&ends, &[f64::from(SIDE)]), f64::from(SIDE) - line);
+    }
+}
+
+/// The overall front and each cell's front of the committed run: no design dominates another, and the overall front
+/// leaves out nothing that no design of any cell dominates.
+#[test]
+fn law_fronts_hold_no_dominated_point() {
+    let reference = Path::new(env!("CARGO_MANIFEST_DIR")).join("results/reference");
+    let objectives = [
+        Objective::Efficiency,
+        Objective::OutputPower,
+        Objective::Area,
+    ];
+    let all = |designs: &[DesignRecord]| -> Vec<Costs> {
+        designs
+            .iter()
+            .filter_map(|d| d.evaluation.figures.as_ref())
+            .map(|f| costs(&objectives, f.efficiency, f.output_power_w, f.area_m2))
+            .collect()
+    };
+    let pure = |points: &[Costs]| {
+        points
+            .iter()
+            .all(|a| points.iter().all(|b| !dominates(b, a)))
+    };
+    let front = all(&read_front(&reference).unwrap().designs);
+    assert!(front.len() > 100 && pure(&front));
+    let mut count = 0;
+    while let Some(cell) = read_cell(&reference, count).unwrap() {
+        let points = all(&cell.designs);
+        assert!(points.len() == cell.designs.len() && pure(&points));
+        assert!(
+            points
+                .iter()
+                .all(|p| front.iter().any(|f| f == p || dominates(f, p)))
+        );
+        count += 1;
+    }
+    assert_eq!(count, 4);
 }

@@ -4,8 +4,8 @@ mod common;
 
 use common::ideal_technology;
 use proptest::prelude::*;
-use widefront::evaluate::{Figures, Setup, evaluate};
-use widefront::study::{Design, Network, Study};
+use widefront::evaluate::{Figures, Setup, evaluate, loop_waveform};
+use widefront::study::{Design, Network, Study, Swing};
 use widefront::technology::{Inductor, Technology, Transistor};
 
 /// The energy balance: what the issue of this program asks for.
@@ -182,5 +182,180 @@ proptest! {
         // Harmonics of order 1/Q² are what is left between them.
         prop_assert!((two.efficiency / one.efficiency - 1.0).abs() < 1e-4);
         prop_assert!((two.output_power_w / (2.0 * one.output_power_w) - 1.0).abs() < 1e-4);
+    }
+
+    /// Everything a times as fast, all capacitances an a-th: the same powers at the same voltages.
+    #[test]
+    fn law_time_and_frequency_scaling((legs, stack, direct, design) in random_design(), a in 0.2..5.0f64) {
+        let (study, technology) = (study(legs, stack, kind(direct)), technology());
+        let Some(f) = found(&study, &technology, &design) else {
+            return Ok(());
+        };
+        let mut fast_study = study.clone();
+        fast_study.frequency_hz *= a;
+        fast_study.driver.input_capacitance_f /= a;
+        let mut fast = technology.clone();
+        let pair = fast.transistors.get_mut("core").unwrap();
+        for device in [&mut pair.nmos, &mut pair.pmos] {
+            device.gate_capacitance_f_m /= a;
+            device.overlap_capacitance_f_m /= a;
+            device.junction_capacitance_f_m /= a;
+        }
+        let g = found(&fast_study, &fast, &design).unwrap();
+        prop_assert!((g.efficiency / f.efficiency - 1.0).abs() < EXACT);
+        prop_assert!((g.output_power_w / f.output_power_w - 1.0).abs() < EXACT);
+        prop_assert!((g.edge_time_fraction / f.edge_time_fraction - 1.0).abs() < EXACT);
+        prop_assert!((g.inductance_h * a / f.inductance_h - 1.0).abs() < EXACT);
+    }
+
+    /// Switches that are resistances with drivers of their own rail, junctions that are plain capacitors: a linear
+    /// circuit, whose powers go with the square of the supply.
+    #[test]
+    fn law_powers_go_with_the_supply_squared((legs, _, direct, design) in random_design(), a in 0.5..4.0f64) {
+        let mut study = study(legs, 1, kind(direct));
+        study.driver.swing = Swing::Voltage(1.0);
+        let mut technology = technology();
+        let pair = technology.transistors.get_mut("core").unwrap();
+        for device in [&mut pair.nmos, &mut pair.pmos] {
+            device.transconductance_a_v2 = 1e6;
+            device.junction_grading = 0.0;
+        }
+        let higher = Design { supply_v: a * design.supply_v, ..design.clone() };
+        let (Some(f), Some(g)) = (found(&study, &technology, &design), found(&study, &technology, &higher)) else {
+            return Ok(());
+        };
+        /// What is left of the channel beside the access resistance is of the order of 1e-10.
+        const LINEAR: f64 = 1e-7;
+        prop_assert!((g.output_power_w / (a * a * f.output_power_w) - 1.0).abs() < LINEAR);
+        prop_assert!((g.dc_power_w / (a * a * f.dc_power_w) - 1.0).abs() < LINEAR);
+        prop_assert!((g.losses_w.conduction / (a * a * f.losses_w.conduction) - 1.0).abs() < LINEAR);
+    }
+
+    /// With equal switches one half of the period is the other's mirror, and no even harmonic is left.
+    #[test]
+    fn law_equal_switches_make_mirrored_half_periods((_, stack, direct, design) in random_design()) {
+        const SAMPLES: usize = 32;
+        /// Of the supply and of the highest current.
+        const MIRRORED: f64 = 1e-9;
+        let study = study(1, stack, kind(direct));
+        let mut technology = technology();
+        let pair = technology.transistors.get_mut("core").unwrap();
+        pair.pmos = pair.nmos.clone();
+        let design = Design { width_ratio: 1.0, ..design };
+        let setup = Setup::new(&study, &technology).unwrap();
+        let Some(f) = evaluate(&setup, &design).figures else {
+            return Ok(());
+        };
+        let wave = loop_waveform(&setup, &design, SAMPLES).unwrap();
+        let highest_a = wave.current_a.iter().fold(0.0, |m: f64, i| m.max(i.abs()));
+        for k in 0..SAMPLES / 2 {
+            let other = k + SAMPLES / 2;
+            let volts = wave.drain_v[k] + wave.drain_v[other] - design.supply_v;
+            prop_assert!(volts.abs() < MIRRORED * design.supply_v, "{}", volts);
+            let amperes = wave.current_a[k] + wave.current_a[other];
+            prop_assert!(amperes.abs() < MIRRORED * highest_a, "{}", amperes);
+        }
+        prop_assert!(f.second_harmonic_dbc.is_none_or(|h| h < -180.0), "{:?}", f.second_harmonic_dbc);
+        prop_assert!(f.fourth_harmonic_dbc.is_none_or(|h| h < -180.0), "{:?}", f.fourth_harmonic_dbc);
+    }
+
+    /// Exchanging the switches turns the leg upside down: the same powers.
+    #[test]
+    fn law_exchanged_switches_have_the_same_powers((legs, stack, direct, design) in random_design()) {
+        let (study, technology) = (study(legs, stack, kind(direct)), technology());
+        let Some(f) = found(&study, &technology, &design) else {
+            return Ok(());
+        };
+        let mut exchanged = technology.clone();
+        let pair = exchanged.transistors.get_mut("core").unwrap();
+        std::mem::swap(&mut pair.nmos, &mut pair.pmos);
+        let other = Design {
+            nmos_width_m: design.nmos_width_m * design.width_ratio,
+            width_ratio: 1.0 / design.width_ratio,
+            ..design
+        };
+        let g = found(&study, &exchanged, &other).unwrap();
+        prop_assert!((g.output_power_w / f.output_power_w - 1.0).abs() < EXACT);
+        prop_assert!((g.dc_power_w / f.dc_power_w - 1.0).abs() < EXACT);
+        prop_assert!((g.gate_capacitance_f / f.gate_capacitance_f - 1.0).abs() < EXACT);
+        prop_assert!((g.losses_w.leakage / f.losses_w.leakage - 1.0).abs() < EXACT);
+        prop_assert!((g.overdrive_use_p / f.overdrive_use_n - 1.0).abs() < EXACT);
+    }
+
+    /// What can only cost: loss behind the antenna, the drivers' own crowbar, heat in the off current, dearer area.
+    #[test]
+    fn law_what_can_only_cost_costs((legs, stack, direct, design) in random_design(), more in 1.1..3.0f64) {
+        let (study, technology) = (study(legs, stack, kind(direct)), technology());
+        let Some(f) = found(&study, &technology, &design) else {
+            return Ok(());
+        };
+        let changed = |change: &dyn Fn(&mut Study, &mut Technology)| {
+            let (mut study, mut technology) = (study.clone(), technology.clone());
+            change(&mut study, &mut technology);
+            found(&study, &technology, &design).unwrap()
+        };
+        let lossy = changed(&|study, _| study.antenna_loss_db *= more);
+        let ratio = 10f64.powf(-0.03 * (more - 1.0));
+        prop_assert!((lossy.output_power_w / f.output_power_w / ratio - 1.0).abs() < EXACT);
+        prop_assert!((lossy.efficiency / f.efficiency / ratio - 1.0).abs() < EXACT);
+        prop_assert_eq!(lossy.total_power_w, f.total_power_w);
+        let crowbar = changed(&|study, _| study.driver.crowbar *= more);
+        prop_assert!(crowbar.efficiency < f.efficiency && crowbar.losses_w.gate > f.losses_w.gate);
+        prop_assert!(crowbar.losses_w.driver_chain > f.losses_w.driver_chain);
+        let hot = changed(&|study, _| study.temperature_k += 20.0 * more);
+        prop_assert!(hot.losses_w.leakage > f.losses_w.leakage);
+        let dear = changed(&|_, technology| technology.layout.width_area_m *= more);
+        prop_assert!(dear.area_m2 > f.area_m2 && dear.efficiency == f.efficiency);
+        prop_assert!((dear.area_parts_m2.switches / (more * f.area_parts_m2.switches) - 1.0).abs() < EXACT);
+        let parts = f.area_parts_m2;
+        let sum = parts.switches + parts.drivers + parts.capacitors + parts.decoupling + parts.inductors;
+        prop_assert!((sum / f.area_m2 - 1.0).abs() < EXACT);
+    }
+
+    /// Wider switches conduct better, and cost charge and area.
+    #[test]
+    fn law_width_trades_resistance_for_charge((legs, stack, direct, design) in random_design(), more in 1.05..3.0f64) {
+        let (study, technology) = (study(legs, stack, kind(direct)), technology());
+        let wider = Design { nmos_width_m: more * design.nmos_width_m, ..design.clone() };
+        let (Some(f), Some(g)) = (found(&study, &technology, &design), found(&study, &technology, &wider)) else {
+            return Ok(());
+        };
+        prop_assert!(g.on_resistance_n_ohm < f.on_resistance_n_ohm);
+        prop_assert!(g.on_resistance_p_ohm < f.on_resistance_p_ohm);
+        prop_assert!(g.drain_capacitance_f > f.drain_capacitance_f);
+        prop_assert!(g.overdrive_use_n < f.overdrive_use_n);
+        prop_assert!(g.area_parts_m2.switches > f.area_parts_m2.switches);
+        prop_assert!(g.losses_w.leakage > f.losses_w.leakage);
+    }
+
+    /// Without drain charge every resistance in the way of the current costs efficiency.
+    #[test]
+    fn law_resistances_cost_efficiency(
+        direct in any::<bool>(),
+        loaded_q in 3.0..8.0f64,
+        ohm in 3.0..30.0f64,
+        more in 1.1..3.0f64,
+    ) {
+        let mut technology = ideal_technology();
+        technology.inductor = Inductor::Fixed { quality: 20.0, area_base_m2: 1e-8, area_slope_m2_h: 30.0 };
+        technology.capacitor.quality = 50.0;
+        technology.layout.routing_resistance_ohm = 0.1;
+        let study = study(1, 1, kind(direct));
+        let design = Design {
+            loaded_q: loaded_q + 3.0,
+            resistance_ohm: (!direct).then_some(ohm),
+            ..common::direct_design()
+        };
+        let with = |change: &dyn Fn(&mut Technology)| {
+            let mut technology = technology.clone();
+            change(&mut technology);
+            found(&study, &technology, &design).unwrap().drain_efficiency
+        };
+        let plain = with(&|_| {});
+        prop_assert!(plain < 1.0);
+        prop_assert!(with(&|t| t.layout.routing_resistance_ohm *= more) < plain);
+        prop_assert!(with(&|t| t.capacitor.quality /= more) < plain);
+        let worse = Inductor::Fixed { quality: 20.0 / more, area_base_m2: 1e-8, area_slope_m2_h: 30.0 };
+        prop_assert!(with(&|t| t.inductor = worse.clone()) < plain);
     }
 }
