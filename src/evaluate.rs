@@ -206,6 +206,12 @@ pub struct Performance<S> {
 /// A switch of more than this passes nothing; the steady state of what is left is rounding.
 const CUT_OFF_OHM: f64 = 1e9;
 
+fn cut_off(resistance_ohm: [f64; 2]) -> Option<Impossible> {
+    let [n, p] = resistance_ohm;
+    let resistance_ohm = n.max(p);
+    (resistance_ohm > CUT_OFF_OHM).then_some(Impossible::CutOff { resistance_ohm })
+}
+
 /// Sections 2, 4 and 5: the leg, its network, their steady state with the harmonics asked for.
 ///
 /// # Errors
@@ -236,16 +242,17 @@ pub fn core<S: Scalar>(
             &setup.pair,
             network.loop_impedance(setup.network.angular_frequency),
         )
-        .ok_or(Impossible::Numbers)?;
-    let largest = on_state
-        .resistance_ohm
-        .map(S::value)
-        .into_iter()
-        .fold(0.0, f64::max);
-    if largest > CUT_OFF_OHM {
-        return Err(Impossible::CutOff {
-            resistance_ohm: largest,
-        });
+        .ok_or_else(|| {
+            // Too much resistance for any number is a switch that never turns on, at no current already.
+            let devices = setup.pair.both();
+            let without_current = [0, 1].map(|i| {
+                let swing_v = leg.swing_v.value();
+                devices[i].on_resistance_ohm_m(swing_v) / leg.widths_m[i].value()
+            });
+            cut_off(without_current).unwrap_or(Impossible::Numbers)
+        })?;
+    if let Some(cut_off) = cut_off(on_state.resistance_ohm.map(S::value)) {
+        return Err(cut_off);
     }
     let plate_f =
         network.series_capacitance_f * (setup.capacitor.bottom_plate * f64::from(setup.legs));

@@ -359,3 +359,27 @@ proptest! {
         prop_assert!(with(&|t| t.inductor = worse.clone()) < plain);
     }
 }
+
+/// Found by fuzzing: a threshold so far above the supply that no current is left in a floating-point number.
+#[test]
+fn regress_switches_that_never_turn_on_are_told() {
+    let study = study(1, 1, Network::Direct);
+    let mut technology = technology();
+    let pair = technology.transistors.get_mut("core").unwrap();
+    for device in [&mut pair.nmos, &mut pair.pmos] {
+        device.threshold_v = 5.0;
+        device.slope = 1.0;
+    }
+    for supply_v in [0.05, 0.4, 1.0] {
+        let design = Design {
+            supply_v,
+            ..common::direct_design()
+        };
+        let evaluation = evaluate(&Setup::new(&study, &technology).unwrap(), &design);
+        let reason = evaluation.reason.unwrap();
+        assert!(
+            evaluation.figures.is_none() && reason.starts_with("cut_off"),
+            "{supply_v}: {reason}"
+        );
+    }
+}

@@ -1,7 +1,7 @@
 //! One root of an increasing function in a bracket.
 
 /// Root of `f`, given as `(value, slope)`, between `low` (`f ≤ 0`) and `high` (`f ≥ 0`): Newton's method kept inside a
-/// shrinking bracket, to the last bits. `None` when `f` is not finite somewhere on the way.
+/// shrinking bracket, to the last bits. `None` when `f` is not finite somewhere on the way, or the bracket is none.
 pub fn increasing_root(
     mut low: f64,
     mut high: f64,
@@ -10,6 +10,9 @@ pub fn increasing_root(
 ) -> Option<f64> {
     /// Bisection alone would need about 60 halvings to the last bit; Newton needs few.
     const MOST_STEPS: usize = 100;
+    if low.is_nan() || high.is_nan() || low > high {
+        return None;
+    }
     let mut x = start.clamp(low, high);
     for _ in 0..MOST_STEPS {
         let (value, slope) = f(x);
@@ -49,5 +52,15 @@ mod tests {
         let steep = increasing_root(0.0, 10.0, 10.0, |x| ((x - 3.0).tanh(), 0.0)).unwrap();
         assert!((steep - 3.0).abs() < 1e-14);
         assert!(increasing_root(0.0, 1.0, 0.5, |_| (f64::NAN, 1.0)).is_none());
+    }
+
+    #[test]
+    fn law_what_is_no_bracket_has_no_root() {
+        let line = |x: f64| (x, 1.0);
+        for (low, high) in [(0.0, f64::NAN), (f64::NAN, 1.0), (1.0, -1.0)] {
+            assert_eq!(increasing_root(low, high, 0.5, line), None);
+        }
+        assert_eq!(increasing_root(-1.0, 1.0, f64::NAN, line), None);
+        assert_eq!(increasing_root(-1.0, 1.0, 0.5, |_| (f64::NAN, 1.0)), None);
     }
 }

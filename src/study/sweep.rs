@@ -161,7 +161,7 @@ mod tests {
             .collect();
         assert_eq!(variants, [(1, 0.9e9), (1, 2.45e9), (2, 0.9e9), (2, 2.45e9)]);
         let single = read_str(STUDY, Path::new("a.toml")).unwrap().study;
-        assert_eq!(single.variants(), [single.clone()]);
+        assert_eq!(single.variants(), std::slice::from_ref(&single));
     }
 
     #[test]

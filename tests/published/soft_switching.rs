@@ -3,7 +3,7 @@
 use crate::class_d::figures;
 use crate::common::{direct_design, direct_study, ideal_technology};
 use crate::{Line, Within};
-use std::f64::consts::TAU;
+use std::f64::consts::{FRAC_1_PI, FRAC_PI_2, TAU};
 use widefront::evaluate::{Setup, loop_waveform};
 use widefront::study::Design;
 use widefront::technology::Technology;
@@ -234,7 +234,8 @@ fn published_soft_switching() {
 fn law_soft_switching_loses_nothing() {
     /// Of the hard-switched loss C V² f: switches of a microohm, and the voltage left by the table's last digit.
     const NOTHING: f64 = 1e-3;
-    for (on_duty, capacitance, reactance) in [(0.25, 0.318310, 1.570796), (0.4, 0.109973, 0.442240)]
+    for (on_duty, capacitance, reactance) in
+        [(0.25, FRAC_1_PI, FRAC_PI_2), (0.4, 0.109973, 0.442240)]
     {
         let leg = Leg {
             loaded_q: SINE,
