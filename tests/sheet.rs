@@ -209,9 +209,20 @@ fn regress_unknown_designs_and_damaged_runs() {
     let unknown = sheet(&run, &format!("{id}9")).code(2);
     assert!(stderr(&unknown).contains(&format!("did you mean \"{id}\"")));
     assert!(!run.join("sheets").exists());
-    fs::write(run.join("front.json"), "{").unwrap();
+    // What is drawn comes from records that carry a digest.
+    let record = fs::read_to_string(run.join("run.json")).unwrap();
+    let altered = record.replacen("\"legs\":1", "\"legs\":9", 1);
+    assert_ne!(altered, record);
+    fs::write(run.join("run.json"), altered).unwrap();
     let damaged = sheet(&run, &id).code(1);
-    assert!(stderr(&damaged).contains("front.json"));
+    assert!(
+        stderr(&damaged).contains("run.json: its study is damaged: it does not match its hash")
+    );
+    fs::write(run.join("run.json"), record).unwrap();
+    let cell = run.join(format!("cells/{}.json", id.split_once('-').unwrap().0));
+    fs::write(&cell, "{").unwrap();
+    let damaged = sheet(&run, &id).code(1);
+    assert!(stderr(&damaged).contains(".json: is damaged"));
     fs::write(run.join("run.json"), "{").unwrap();
     let damaged = sheet(&run, &id).code(1);
     assert!(stderr(&damaged).contains("run.json"));
@@ -227,6 +238,9 @@ fn regress_a_technology_without_rules_is_told_what_it_lacks() {
     let rules = record["technology"]["rules"].as_object_mut().unwrap();
     rules.remove("grid_m");
     rules.remove("capacitor_unit_f");
+    record["technology_hash"] = widefront::run::digest(&record["technology"])
+        .unwrap()
+        .into();
     fs::write(&name, record.to_string()).unwrap();
     let refused = sheet(&run, &id).code(2);
     let told = String::from_utf8_lossy(&refused.get_output().stderr).into_owned();

@@ -103,11 +103,11 @@ fn device_line(device: &WarmTransistor, swing: f64, supply: f64) -> String {
 }
 
 /// Assessments a slice takes when it is traced in full, measured on the default study.
-const ASSESSMENTS_A_SLICE: usize = 500;
+const ASSESSMENTS_A_SLICE: f64 = 500.0;
 
 fn space_lines(s: &Space, variants: usize, line: &mut impl FnMut(&str, String)) {
     let cells = space::cells(s).len() * variants;
-    let slices = space::slices_a_cell(s);
+    let combinations = s.combinations();
     line(
         "cells",
         match variants {
@@ -120,7 +120,7 @@ fn space_lines(s: &Space, variants: usize, line: &mut impl FnMut(&str, String)) 
     );
     line(
         "combinations a cell",
-        format!("{slices} of whole numbers and grid values"),
+        format!("{combinations} of whole numbers and grid values"),
     );
     let free = [
         ("supply", Some(&s.supply_v)),
@@ -142,7 +142,7 @@ fn space_lines(s: &Space, variants: usize, line: &mut impl FnMut(&str, String)) 
         "evaluations expected",
         format!(
             "about {:.1e}",
-            (cells * slices * ASSESSMENTS_A_SLICE) as f64
+            cells as f64 * combinations as f64 * ASSESSMENTS_A_SLICE
         ),
     );
 }

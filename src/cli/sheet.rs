@@ -37,12 +37,8 @@ pub fn run(arguments: &SheetArguments) -> Result<(), Failure> {
     print(&summary(&arguments.run, &sheet))
 }
 
-/// A design of the overall front, or of the front of the cell that its id begins with.
+/// A design of the front of the cell that its id begins with: cells' files carry a digest, the overall front has none.
 fn design(path: &Path, id: &str) -> Result<DesignRecord, Failure> {
-    let front = read_front(path)?.designs;
-    if let Some(found) = front.iter().find(|d| d.id == id) {
-        return Ok(found.clone());
-    }
     let cell = id.split_once('-').and_then(|(cell, _)| cell.parse().ok());
     if let Some(cell) = cell
         && let Some(record) = read_cell(path, cell)?
@@ -50,6 +46,7 @@ fn design(path: &Path, id: &str) -> Result<DesignRecord, Failure> {
     {
         return Ok(found);
     }
+    let front = read_front(path)?.designs;
     let help = nearest(id, front.iter().map(|d| d.id.as_str())).map_or(String::new(), |n| {
         format!("\n  help: did you mean \"{n}\"?")
     });

@@ -15,6 +15,7 @@ mod report;
 pub mod residual;
 mod resistance;
 mod section;
+mod source;
 mod table;
 mod write;
 

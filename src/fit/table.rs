@@ -1,16 +1,19 @@
 //! Tables of measured or simulated curves, from CSV to SI rows.
 
 use super::header::{self, Column, Field};
+use super::source;
 use crate::quantity::excerpt;
 use crate::study::{Fault, FaultKind, Faults, Origin};
 use std::fs::File;
-use std::io::{Cursor, Read};
 use std::path::{Path, PathBuf};
 
 /// Faults of one table that are told; the rest is likely the same again.
 const MOST_FAULTS: usize = 8;
 /// Rows of all tables together; a curve tracer gives some thousands.
 const MOST_ROWS: usize = 5_000_000;
+
+/// Transistor pairs of all tables together.
+const MOST_DEVICES: usize = 100;
 
 /// What a table holds.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -164,16 +167,6 @@ pub fn read(paths: &[PathBuf]) -> Result<Tables, Faults> {
     }
 }
 
-/// The reader behind a UTF-8 byte-order mark, if one stands there.
-fn unmarked(mut file: File) -> std::io::Result<impl Read> {
-    let mut first = Vec::new();
-    (&mut file).take(3).read_to_end(&mut first)?;
-    if first == b"\xef\xbb\xbf" {
-        first.clear();
-    }
-    Ok(Cursor::new(first).chain(file))
-}
-
 fn table(
     tables: &mut Tables,
     path: &Path,
@@ -182,8 +175,8 @@ fn table(
     faults: &mut Vec<Fault>,
 ) -> Option<(Kind, Vec<Row>)> {
     let before = faults.len();
-    let reader = match unmarked(file) {
-        Ok(reader) => reader,
+    let (reader, ration) = match source::rationed(file) {
+        Ok(source) => source,
         Err(error) => {
             let reason = crate::study::raw::reason(&error);
             faults.push(fault(path, None, "", FaultKind::Unreadable { reason }));
@@ -217,6 +210,7 @@ fn table(
     let mut rows = Vec::new();
     let mut record = csv::StringRecord::new();
     loop {
+        ration.set(source::LONGEST_ROW);
         match reader.read_record(&mut record) {
             Ok(false) => break,
             Ok(true) => {}
@@ -315,7 +309,14 @@ fn row(
             Column::Device => {
                 row.device = device(devices, text).ok_or_else(|| {
                     fault("a name of at most 40 letters, digits, - and _, as in [transistor.NAME]")
-                })?
+                })?;
+                if row.device >= MOST_DEVICES {
+                    let (read, allowed) = (
+                        format!("{text}, one more device"),
+                        format!("at most {MOST_DEVICES} in all tables"),
+                    );
+                    return Err((field.column, FaultKind::OutOfRange { read, allowed }));
+                }
             }
             Column::Polarity => {
                 row.polarity = match text {

@@ -2,13 +2,15 @@
 
 use super::records::{CellRecord, SCHEMA};
 use super::{RunError, digest};
+use crate::study::MOST_CELLS;
+use crate::study::raw::open;
 use atomic_write_file::AtomicWriteFile;
 use serde::de::DeserializeOwned;
 use serde::{Deserialize, Serialize};
 use serde_json::Value;
 use std::ffi::OsStr;
 use std::fs::{File, TryLockError};
-use std::io::Write;
+use std::io::{Read, Write};
 use std::path::{Path, PathBuf};
 
 /// A run folder held by this process.
@@ -193,6 +195,23 @@ pub fn cell_name(cell: usize) -> String {
     format!("cells/{cell:05}.json")
 }
 
+/// Longest run record or cell that is read, bytes: a record has some thousands, a design of a cell two thousand.
+const LONGEST_RECORD: u64 = 1 << 26;
+/// Longest overall front, bytes.
+const LONGEST_FRONT: u64 = 1 << 30;
+
+/// A whole file, if it is one and not far too long.
+fn load(name: &Path, longest: u64) -> Result<Vec<u8>, std::io::Error> {
+    let mut bytes = Vec::new();
+    open(name)?.take(longest + 1).read_to_end(&mut bytes)?;
+    if bytes.len() as u64 > longest {
+        return Err(std::io::Error::other(format!(
+            "is longer than {longest} bytes, the most it may have"
+        )));
+    }
+    Ok(bytes)
+}
+
 fn lock(path: &Path) -> Result<File, RunError> {
     let name = path.join(LOCK);
     let file = File::options()
@@ -214,13 +233,13 @@ fn lock(path: &Path) -> Result<File, RunError> {
 /// [`RunError::Damaged`] when it is no run record of this schema, or the system's.
 pub fn read_run(path: &Path) -> Result<Value, RunError> {
     let name = path.join(RECORD);
-    let text = std::fs::read_to_string(&name).map_err(io(&name))?;
+    let text = load(&name, LONGEST_RECORD).map_err(io(&name))?;
     let damaged = |reason: String| RunError::Damaged {
         path: name.clone(),
         reason,
     };
     let value: Value =
-        serde_json::from_str(&text).map_err(|e| damaged(format!("is no run record: {e}")))?;
+        serde_json::from_slice(&text).map_err(|e| damaged(format!("is no run record: {e}")))?;
     if value["schema"] == SCHEMA {
         Ok(value)
     } else {
@@ -231,13 +250,46 @@ pub fn read_run(path: &Path) -> Result<Value, RunError> {
     }
 }
 
+/// The study, the technology or the technologies of a run record as resolved, if they are what the run was started with.
+///
+/// # Errors
+/// [`RunError::Damaged`] when it was altered or is none.
+pub fn resolved<T: DeserializeOwned>(path: &Path, run: &Value, key: &str) -> Result<T, RunError> {
+    let damaged = |reason: String| RunError::Damaged {
+        path: path.join(RECORD),
+        reason: format!("its {key} is damaged: {reason}"),
+    };
+    let mut hashed = run[key].clone();
+    let hash = if key == "study" {
+        unplaced(&mut hashed);
+        "study_hash"
+    } else {
+        "technology_hash"
+    };
+    let found = digest(&hashed).map_err(|e| damaged(e.to_string()))?;
+    if run[hash] != found {
+        return Err(damaged("it does not match its hash".into()));
+    }
+    serde_json::from_value(run[key].clone()).map_err(|e| damaged(e.to_string()))
+}
+
+/// Takes away where technology files lie, which is no part of what a run is.
+pub(super) fn unplaced(study: &mut Value) {
+    if let Some(map) = study.as_object_mut() {
+        map.shift_remove("technology");
+        if let Some(Value::Object(sweep)) = map.get_mut("sweep") {
+            sweep.shift_remove("technologies");
+        }
+    }
+}
+
 /// Reads a cell; `Ok(None)` when it is not there.
 ///
 /// # Errors
 /// [`RunError::Damaged`] when it is truncated, altered or another cell's, or the system's.
 pub fn read_cell(path: &Path, cell: usize) -> Result<Option<CellRecord>, RunError> {
     let name = path.join(cell_name(cell));
-    let text = match std::fs::read(&name) {
+    let text = match load(&name, LONGEST_RECORD) {
         Ok(text) => text,
         Err(e) if e.kind() == std::io::ErrorKind::NotFound => return Ok(None),
         Err(e) => return Err(io(&name)(e)),
@@ -280,7 +332,7 @@ pub fn read_optional<T: DeserializeOwned>(path: &Path, name: &str) -> Result<Opt
 }
 
 fn read_record<T: DeserializeOwned>(file: &Path) -> Result<T, RunError> {
-    let text = std::fs::read(file).map_err(io(file))?;
+    let text = load(file, LONGEST_FRONT).map_err(io(file))?;
     serde_json::from_slice(&text).map_err(|e| RunError::Damaged {
         path: file.to_owned(),
         reason: format!("is damaged: {e}"),
@@ -293,9 +345,15 @@ fn read_record<T: DeserializeOwned>(file: &Path) -> Result<T, RunError> {
 /// As [`read_run`] and [`read_cell`].
 pub fn read_all_fronts(path: &Path) -> Result<super::records::DesignList, RunError> {
     let run = read_run(path)?;
-    let cells = run["cells"].as_u64().unwrap_or(0) as usize;
+    let cells = run["cells"].as_u64().unwrap_or(0);
+    if cells > MOST_CELLS as u64 {
+        return Err(RunError::Damaged {
+            path: path.join(RECORD),
+            reason: format!("counts {cells} cells; no study has more than {MOST_CELLS}"),
+        });
+    }
     let mut designs = Vec::new();
-    for cell in 0..cells {
+    for cell in 0..cells as usize {
         if let Some(record) = read_cell(path, cell)? {
             designs.extend(record.designs);
         }

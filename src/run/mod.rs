@@ -123,8 +123,11 @@ fn remedy(error: &std::io::Error) -> &'static str {
     }
 }
 
-/// blake3 of a value's JSON.
-pub(crate) fn digest<T: Serialize>(value: &T) -> Result<String, serde_json::Error> {
+/// blake3 of a value's JSON, as run records and cells carry it.
+///
+/// # Errors
+/// Of a value that JSON cannot hold.
+pub fn digest<T: Serialize>(value: &T) -> Result<String, serde_json::Error> {
     Ok(blake3::hash(&serde_json::to_vec(value)?)
         .to_hex()
         .to_string())

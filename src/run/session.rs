@@ -1,6 +1,6 @@
 //! One sitting of a search: what is missing is searched on all threads, each finished cell on disk at once.
 
-use super::folder::{RunFolder, read_cell, read_run};
+use super::folder::{RunFolder, read_cell, read_run, unplaced};
 use super::records::{
     CellRecord, DesignRecord, HypervolumeReference, PeriodRecord, RunRecord, SCHEMA, WidthSweep,
 };
@@ -15,7 +15,6 @@ use crate::search::space;
 use crate::study::{Design, Space, Study};
 use crate::technology::Technology;
 use rayon::prelude::*;
-use serde_json::Value;
 use std::collections::BTreeSet;
 use std::path::{Path, PathBuf};
 use std::str::FromStr;
@@ -203,14 +202,8 @@ pub(super) fn new_record(job: &Job<'_>, space: &Space) -> Result<RunRecord, RunE
         path: job.out.join("run.json"),
         reason: format!("cannot be written as JSON: {e}"),
     };
-    // Where the technology file lies is no part of what a run is.
     let mut study = serde_json::to_value(job.study).map_err(damaged)?;
-    if let Some(map) = study.as_object_mut() {
-        map.shift_remove("technology");
-        if let Some(Value::Object(sweep)) = map.get_mut("sweep") {
-            sweep.shift_remove("technologies");
-        }
-    }
+    unplaced(&mut study);
     // Technology is the outermost list.
     let listed = &job.study.sweep.technologies;
     let a_technology = job.variants.len() / listed.len().max(1);

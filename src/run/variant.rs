@@ -1,14 +1,12 @@
 //! Variants of a study that lists several technologies, devices and so on, and their cells.
 
 use super::RunError;
-use super::folder::read_run;
+use super::folder::{read_run, resolved};
 use crate::evaluate::Setup;
 use crate::search::space::{self, Cell};
 use crate::study::{Listed, Space, Study};
 use crate::technology::Technology;
-use serde::de::DeserializeOwned;
 use serde::{Deserialize, Serialize};
-use serde_json::Value;
 use std::path::Path;
 
 /// One combination of what a study lists, ready to be searched.
@@ -100,7 +98,7 @@ pub fn run_cells(space: &Space, variants: usize) -> Vec<RunCell> {
 /// [`RunError::Damaged`] when the run's record holds none, or the system's.
 pub fn variant_of_cell(path: &Path, cell: usize) -> Result<(Study, Technology), RunError> {
     let run = read_run(path)?;
-    let study: Study = part(path, &run, "study")?;
+    let study: Study = resolved(path, &run, "study")?;
     let damaged = |reason: &str| RunError::Damaged {
         path: path.join("run.json"),
         reason: format!("is damaged: {reason}"),
@@ -118,20 +116,13 @@ pub fn variant_of_cell(path: &Path, cell: usize) -> Result<(Study, Technology), 
     let listed = &study.sweep.technologies;
     let technology = match listed.iter().position(|t| *t == variant.technology) {
         Some(place) => {
-            let mut all: Vec<Technology> = part(path, &run, "technologies")?;
+            let mut all: Vec<Technology> = resolved(path, &run, "technologies")?;
             if place >= all.len() {
                 return Err(damaged("a technology is missing"));
             }
             all.swap_remove(place)
         }
-        None => part(path, &run, "technology")?,
+        None => resolved(path, &run, "technology")?,
     };
     Ok((variant, technology))
-}
-
-fn part<T: DeserializeOwned>(path: &Path, run: &Value, key: &str) -> Result<T, RunError> {
-    serde_json::from_value(run[key].clone()).map_err(|e| RunError::Damaged {
-        path: path.join("run.json"),
-        reason: format!("its {key} is damaged: {e}"),
-    })
 }

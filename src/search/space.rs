@@ -257,17 +257,6 @@ pub fn slices(space: &Space, cell: &Cell) -> Vec<Slice> {
     slices
 }
 
-/// How many slices every cell has, without making them.
-pub fn slices_a_cell(space: &Space) -> usize {
-    let others: usize = VARIABLES
-        .iter()
-        .filter(|v| !matches!(v, Variable::Supply | Variable::LoadedQ))
-        .filter_map(|&v| range(space, v))
-        .map(|r| grid(r).len())
-        .product();
-    turns(space).len() * whole_numbers(&space.stages).len() * others
-}
-
 /// The largest value of a range.
 pub fn largest(range: &Range) -> f64 {
     match range {

@@ -161,6 +161,12 @@ pub enum FaultKind {
         /// The interval.
         allowed: String,
     },
+    /// Faults that are not told one by one.
+    #[error("has {count} more faults; mend those above first")]
+    More {
+        /// How many.
+        count: usize,
+    },
     /// A range or a pair of bounds that does not rise.
     #[error("read {low} = {from} and {high} = {to}, allowed \"{low}\" below \"{high}\"")]
     NotRising {
@@ -282,6 +288,12 @@ impl Faults {
             Origin::Argument(_) => None,
         });
         (!faults.is_empty()).then_some(Faults(faults))
+    }
+
+    /// One more, after the others.
+    pub(crate) fn then(mut self, fault: Fault) -> Faults {
+        self.0.push(fault);
+        self
     }
 
     /// The faults one by one.

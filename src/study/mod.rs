@@ -15,7 +15,7 @@ mod variables;
 pub use assign::{DESIGN_KEYS, set_design};
 pub use diagnostics::{Fault, FaultKind, Faults, Origin, Warning, WarningKind};
 pub use lines::Lines;
-pub use read::{SCHEMA, StudyFile, read, read_str};
+pub use read::{MOST_CELLS, SCHEMA, StudyFile, read, read_str};
 pub use resolved::*;
 pub use spelling::nearest;
 pub use sweep::{LISTED, Listed, Sweep};

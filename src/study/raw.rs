@@ -9,7 +9,7 @@ use super::figure::Figure;
 use super::lines::Lines;
 use super::spelling::nearest;
 use crate::quantity::excerpt;
-use std::cell::RefCell;
+use std::cell::{Cell, RefCell};
 use std::io::Read;
 use std::ops;
 use std::path::Path;
@@ -18,6 +18,9 @@ use toml::de::{DeTable, DeValue};
 
 /// Longest file that is read, bytes; a study by hand has a few thousand.
 const LONGEST_FILE: u64 = 1 << 20;
+
+/// Faults of one file that are told; of a file with more, most are likely one slip many times.
+const MOST_FAULTS: usize = 100;
 
 /// What a walk gives: the value, the place of every key, and warnings.
 pub(crate) struct Walked<T> {
@@ -29,6 +32,8 @@ pub(crate) struct Walked<T> {
 struct Walk<'t> {
     text: &'t str,
     faults: RefCell<Vec<Fault>>,
+    /// Faults past [`MOST_FAULTS`].
+    more: Cell<usize>,
     warnings: RefCell<Vec<Warning>>,
     lines: RefCell<Lines>,
 }
@@ -84,6 +89,7 @@ pub(crate) fn walk<T>(
     let walk = Walk {
         text,
         faults: RefCell::default(),
+        more: Cell::new(0),
         warnings: RefCell::default(),
         lines: RefCell::new(Lines::new(path)),
     };
@@ -105,7 +111,10 @@ pub(crate) fn walk<T>(
     let value = build(&root);
     drop(root);
     match Faults::new(walk.faults.into_inner()) {
-        Some(faults) => Err(faults),
+        Some(faults) => Err(match walk.more.get() {
+            0 => faults,
+            count => faults.then(Lines::new(path).fault("", FaultKind::More { count })),
+        }),
         None => Ok(Walked {
             value,
             lines: walk.lines.into_inner(),
@@ -137,6 +146,10 @@ impl Drop for Section<'_, '_> {
         let asked = self.asked.borrow();
         for key in self.table.into_iter().flat_map(|table| table.keys()) {
             if !asked.iter().any(|known| known == key.get_ref()) {
+                if self.is_full() {
+                    self.walk.more.set(self.walk.more.get() + 1);
+                    continue;
+                }
                 self.note(key.get_ref(), &key.span());
                 let near = nearest(key.get_ref(), asked.iter().map(String::as_str));
                 if let Some(meant) = &near {
@@ -198,8 +211,25 @@ impl<'w, 't> Section<'w, 't> {
     }
 
     pub fn fault(&self, key: &str, kind: FaultKind) {
-        let fault = self.walk.lines.borrow().fault(&self.key(key), kind);
-        self.walk.faults.borrow_mut().push(fault);
+        self.push(&self.key(key), kind);
+    }
+
+    /// A fault of the section as a whole.
+    pub fn fault_here(&self, kind: FaultKind) {
+        self.push(&self.place, kind);
+    }
+
+    fn push(&self, key: &str, kind: FaultKind) {
+        if self.is_full() {
+            self.walk.more.set(self.walk.more.get() + 1);
+        } else {
+            let fault = self.walk.lines.borrow().fault(key, kind);
+            self.walk.faults.borrow_mut().push(fault);
+        }
+    }
+
+    fn is_full(&self) -> bool {
+        self.walk.faults.borrow().len() >= MOST_FAULTS
     }
 
     pub fn warning(&self, key: &str, kind: WarningKind) {
@@ -233,7 +263,7 @@ impl<'w, 't> Section<'w, 't> {
 
     /// Faults found so far in the document.
     pub(super) fn fault_count(&self) -> usize {
-        self.walk.faults.borrow().len()
+        self.walk.faults.borrow().len() + self.walk.more.get()
     }
 
     /// Asks for a key and notes where it stands.
@@ -327,6 +357,11 @@ impl<'w, 't> Section<'w, 't> {
         sections
             .map(|name| (name.clone(), self.section(&name)))
             .collect()
+    }
+
+    /// How many keys it has.
+    pub fn len(&self) -> usize {
+        self.table.map_or(0, DeTable::len)
     }
 
     /// True when a section of this name was given as one.

@@ -16,6 +16,10 @@ pub const SCHEMA: i64 = 1;
 const DEFAULT_TEMPERATURE_K: f64 = 300.15;
 /// Most variants of a study: more is a slip of the pen, and each takes memory.
 const MOST_VARIANTS: usize = 10_000;
+/// Most cells of all variants together: their files fill a folder, their records the memory of what reads them.
+pub const MOST_CELLS: usize = 1_000_000;
+/// Most combinations of a cell: each is searched for some hundredths of a second, and kept in memory.
+const MOST_COMBINATIONS: u128 = 10_000;
 /// Seed when the study gives none.
 const DEFAULT_SEED: u32 = 1;
 
@@ -121,6 +125,13 @@ fn build(root: &Section<'_, '_>, technologies: Vec<std::path::PathBuf>) -> Study
         let allowed = format!("at most {MOST_VARIANTS}, the product of all lists");
         root.fault("", FaultKind::WrongType { read, allowed });
     }
+    let cells = space.as_ref().map_or(1, Space::cells);
+    if cells.saturating_mul(sweep.variants()) > MOST_CELLS {
+        let read = format!("{cells} cells of each of {} variants", sweep.variants());
+        let allowed =
+            format!("at most {MOST_CELLS} cells in all; take fewer steps of loaded_q and supply");
+        root.fault("space", FaultKind::OutOfRange { read, allowed });
+    }
     Study {
         title,
         technology: technologies[0].clone(),
@@ -163,7 +174,7 @@ fn driver(section: &Section<'_, '_>, stack: u32) -> DriverChoice {
 }
 
 fn space(section: &Section<'_, '_>) -> Space {
-    Space {
+    let space = Space {
         supply_v: section.required_range("supply", SUPPLY),
         loaded_q: section.required_range("loaded_q", LOADED_Q),
         nmos_width_m: section.required_range("nmos_width", NMOS_WIDTH),
@@ -175,7 +186,20 @@ fn space(section: &Section<'_, '_>) -> Space {
         reactance: section.required_range("reactance", REACTANCE),
         dead_time: section.required_range("dead_time", DEAD_TIME),
         stages: section.required_range("stages", STAGES),
+    };
+    let combinations = space.combinations();
+    if combinations > MOST_COMBINATIONS {
+        section.fault_here(FaultKind::OutOfRange {
+            read: format!(
+                "{:.1e} combinations of whole numbers and grid values a cell",
+                combinations as f64
+            ),
+            allowed: format!(
+                "at most {MOST_COMBINATIONS}; leave out steps where anything between from and to will do"
+            ),
+        });
     }
+    space
 }
 
 fn read_limits(section: &Section<'_, '_>) -> Limits {

@@ -102,6 +102,16 @@ pub enum Range {
     Grid(Vec<f64>),
 }
 
+impl Range {
+    /// How many values a search enumerates: one of what is fixed or free.
+    pub fn count(&self) -> usize {
+        match self {
+            Range::Fixed(_) | Range::Free { .. } => 1,
+            Range::Grid(values) => values.len(),
+        }
+    }
+}
+
 /// The variables of a search, SI. Those that the network and the technology do not use are absent:
 /// a spiral takes `turns`, `diameter_m` and (low-pass) `trace_m`; a fixed inductor takes (low-pass)
 /// `resistance_ohm`.
@@ -129,6 +139,34 @@ pub struct Space {
     pub dead_time: Range,
     /// Driver stages N, whole numbers: `Fixed` or `Grid`.
     pub stages: Range,
+}
+
+impl Space {
+    /// Cells of a variant: combinations of loaded Q and supply.
+    pub fn cells(&self) -> usize {
+        self.loaded_q.count() * self.supply_v.count()
+    }
+
+    /// Combinations of whole numbers and grid values in every cell.
+    pub fn combinations(&self) -> u128 {
+        let always = [
+            &self.nmos_width_m,
+            &self.width_ratio,
+            &self.reactance,
+            &self.dead_time,
+            &self.stages,
+        ];
+        let given = [
+            &self.turns,
+            &self.trace_m,
+            &self.diameter_m,
+            &self.resistance_ohm,
+        ];
+        let ranges = always.into_iter().chain(given.into_iter().flatten());
+        ranges
+            .map(|range| range.count() as u128)
+            .fold(1, u128::saturating_mul)
+    }
 }
 
 /// A figure's allowed interval; `None` = unbounded.

@@ -9,6 +9,8 @@ use std::path::Path;
 
 /// Version of the technology format.
 pub const SCHEMA: i64 = 1;
+/// Most transistor pairs; a process has some tens of flavours.
+const MOST_PAIRS: usize = 100;
 
 /// A technology and what later checks need to speak of its file.
 #[derive(Debug, Clone, PartialEq)]
@@ -43,12 +45,24 @@ fn build(root: &Section<'_, '_>) -> Technology {
     let name = root.text("name");
     let source = root.text("source");
     let pairs = root.section("transistor");
-    let transistors: std::collections::BTreeMap<_, _> = pairs
-        .sections()
+    let count = pairs.len();
+    if count > MOST_PAIRS {
+        let (read, allowed) = (
+            format!("{count} transistor pairs"),
+            format!("at most {MOST_PAIRS}"),
+        );
+        pairs.fault_here(FaultKind::OutOfRange { read, allowed });
+        pairs.accept_all();
+    }
+    let sections = match count {
+        0..=MOST_PAIRS => pairs.sections(),
+        _ => Vec::new(),
+    };
+    let transistors: std::collections::BTreeMap<_, _> = sections
         .into_iter()
         .map(|(name, section)| (name, pair(&section)))
         .collect();
-    if transistors.is_empty() && root.has_section("transistor") {
+    if count == 0 && root.has_section("transistor") {
         let allowed = "at least one pair, [transistor.NAME]".to_owned();
         root.fault(
             "transistor",

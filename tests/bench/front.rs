@@ -40,7 +40,9 @@ const INFEASIBLE: f64 = 1e3;
 /// Points of a reference are no closer than this part of its span.
 const REFERENCE_SPACING: f64 = 0.01;
 /// Demands asked of a cell where the efficiency at equal power and area is compared.
-const DEMANDS: usize = 100;
+const DEMANDS: usize = 400;
+/// Halvings of the spacing that thins a reference to as many points as the search has.
+const HALVINGS: usize = 20;
 /// Seeds of the longer searches.
 const LONG_SEEDS: [u64; 2] = [101, 102];
 const LONG: Effort = Effort {
@@ -287,18 +289,49 @@ fn read_reference(name: &str) -> (Vec<Costs>, f64) {
     (points.collect(), all)
 }
 
-/// Worst of a cell at equal power and area: how far the reference is above, relative; and how many demands it lost.
-fn worst_shortfall(place: &Place<'_>, reference: &[Costs]) -> (f64, u64) {
-    let step = (reference.len() / DEMANDS).max(1);
-    let asked: Vec<&Costs> = reference.iter().step_by(step).collect();
+/// A cell asked for the powers and areas of points of its reference.
+struct Demanded {
+    demands: usize,
+    assessments: u64,
+    /// Worst of (reference − answer) / reference, 1 where nothing answers.
+    shortfall: f64,
+    /// Hypervolume of the answers over that of the points asked for: fronts compared at equal density.
+    volume_ratio: f64,
+}
+
+fn demanded(place: &Place<'_>, reference: &[Costs]) -> Demanded {
+    let step = reference.len().div_ceil(DEMANDS);
+    let asked: Vec<Costs> = reference.iter().step_by(step).copied().collect();
     let demands: Vec<[f64; 2]> = asked.iter().map(|p| [-p[1], p[2]]).collect();
-    let (answers, evaluations) = best_efficiencies(&place.context, &place.cell, &demands);
-    let worst = asked
-        .iter()
-        .zip(answers)
+    let (answers, assessments) = best_efficiencies(&place.context, &place.cell, &demands);
+    let pairs = asked.iter().zip(&answers);
+    let shortfall = pairs
+        .clone()
         .map(|(p, answer)| answer.map_or(1.0, |best| 1.0 - best / -p[0]))
         .fold(0.0, f64::max);
-    (worst, evaluations)
+    let answered: Vec<Costs> = pairs
+        .filter_map(|(p, answer)| Some([-(*answer)?, p[1], p[2]]))
+        .collect();
+    Demanded {
+        demands: asked.len(),
+        assessments,
+        shortfall,
+        volume_ratio: volume(&answered, place.area_m2) / volume(&asked, place.area_m2),
+    }
+}
+
+/// As many points as wanted, or a few less, by the search's own rule of spacing.
+fn thinned_to(points: &[Costs], most: usize) -> Vec<Costs> {
+    let (mut low, mut high) = (0.0, 1.0);
+    for _ in 0..HALVINGS {
+        let middle = 0.5 * (low + high);
+        if thinned(points, middle).len() > most {
+            low = middle;
+        } else {
+            high = middle;
+        }
+    }
+    thinned(points, high)
 }
 
 fn compare(place: &Place<'_>) -> String {
@@ -309,15 +342,21 @@ fn compare(place: &Place<'_>) -> String {
     // At equal density: the reference thinned as the search thins its own points.
     let spacing = 0.25 / place.context.effort.levels as f64;
     let ratio = |points: &[Costs]| volume(points, place.area_m2) / all;
-    let (shortfall, with_demands) = worst_shortfall(place, &reference);
+    let as_many = thinned_to(&reference, own.len());
+    let demanded = demanded(place, &reference);
     let mut line = format!(
-        "{:<12} search    {evaluations:>8} {own_s:>7.2} s {:>5} points  volume {:.4}  shortfall {:.4} %  ({} demands, {} assessments more)\n",
+        "{:<12} search    {evaluations:>8} {own_s:>7.2} s {:>5} points  volume {:.4}; of the reference thinned to {} points {:.4}\n\
+         {:<12} at {} powers and areas of the reference: volume {:.5} of its own, worst shortfall {:.4} % ({} assessments more)\n",
         place.name,
         own.len(),
         ratio(&own),
-        100.0 * shortfall,
-        reference.len().div_ceil((reference.len() / DEMANDS).max(1)),
-        with_demands - evaluations.min(with_demands),
+        as_many.len(),
+        ratio(&own) / ratio(&as_many),
+        "",
+        demanded.demands,
+        demanded.volume_ratio,
+        100.0 * demanded.shortfall,
+        demanded.assessments - evaluations.min(demanded.assessments),
     );
     let slices = slices(place.context.space, &place.cell);
     let whole = Whole::new(&place.context, &slices, place.area_m2);
