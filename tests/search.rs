@@ -155,7 +155,6 @@ fn law_the_same_bytes_at_any_thread_count_in_parts_and_after_damage() {
         Command::cargo_bin("widefront")
             .unwrap()
             .arg("join")
-            .arg(study_path("quick.toml"))
             .arg(at("joined"))
             .args(parts)
             .assert()
@@ -174,6 +173,20 @@ fn law_the_same_bytes_at_any_thread_count_in_parts_and_after_damage() {
     let complaints = String::from_utf8(damaged.get_output().stderr.clone()).unwrap();
     assert!(complaints.contains("part3/cells/00002.json: is damaged"));
     fs::write(&lost, &kept).unwrap();
+    // A part of another study is refused.
+    let record = parts[1].join("run.json");
+    let sound = fs::read_to_string(&record).unwrap();
+    let mut other: serde_json::Value = serde_json::from_str(&sound).unwrap();
+    other["study"]["antenna_loss_db"] = 1.0.into();
+    other["study_hash"] = "another".into();
+    fs::write(&record, other.to_string()).unwrap();
+    let foreign = join(&parts).code(1);
+    let complaints = String::from_utf8(foreign.get_output().stderr.clone()).unwrap();
+    assert!(
+        complaints.contains("part2") && complaints.contains("another study (study.antenna_loss_db"),
+        "{complaints}"
+    );
+    fs::write(&record, sound).unwrap();
     join(&parts).success();
     assert!(read(&at("joined"), "front.csv") == front);
     // A join that was broken off is done again.
@@ -185,7 +198,6 @@ fn law_the_same_bytes_at_any_thread_count_in_parts_and_after_damage() {
     let refused = Command::cargo_bin("widefront")
         .unwrap()
         .arg("join")
-        .arg(study_path("quick.toml"))
         .arg(&parts[0])
         .args(&parts)
         .assert()

@@ -102,6 +102,22 @@ fn law_a_variant_s_cells_are_those_of_its_study_alone() {
 }
 
 #[test]
+fn regress_technologies_of_one_name_are_refused() {
+    let room = TempDir::new().unwrap();
+    let technology = Path::new(env!("CARGO_MANIFEST_DIR")).join("configs/technology/demo55.toml");
+    fs::copy(&technology, room.path().join("copy.toml")).unwrap();
+    let one = format!("{technology:?}");
+    let file = study(&room, "two", &[(&one, &format!("[{one}, \"copy.toml\"]"))]);
+    let refused = widefront(&["check", file.to_str().unwrap()]).code(2);
+    let said = String::from_utf8_lossy(&refused.get_output().stderr).into_owned();
+    assert!(
+        said.contains("demo55.toml and of ")
+            && said.contains("copy.toml; allowed: names that differ"),
+        "{said}"
+    );
+}
+
+#[test]
 fn law_threads_and_parts_change_no_byte_and_groups_keep_their_fronts() {
     let room = TempDir::new().unwrap();
     let file = study(&room, "all", &[]);
@@ -111,7 +127,7 @@ fn law_threads_and_parts_change_no_byte_and_groups_keep_their_fronts() {
         searched(&file, &run(&part.replace('/', "-")), &["--part", part]);
     }
     let paths = ["joined", "1-2", "2-2"].map(|n| run(n).to_str().unwrap().to_owned());
-    let mut arguments = vec!["join", file.to_str().unwrap()];
+    let mut arguments = vec!["join"];
     arguments.extend(paths.iter().map(String::as_str));
     widefront(&arguments).success();
     for name in ["front.csv", "cells.csv"] {

@@ -183,6 +183,16 @@ pub(crate) fn load(path: &Path, set: &[String]) -> Result<Loaded, Failure> {
                 for warning in &read.warnings {
                     warn(warning.to_string());
                 }
+                let name = &read.technology.name;
+                if let Some((other, _)) = technologies.iter().find(|(_, t)| t.name == *name) {
+                    return Err(Failure::Input(format!(
+                        "{}: technology: read \"{name}\" as the name of {} and of {}; allowed: names that differ, as designs \
+                         are told apart by them",
+                        path.display(),
+                        other.display(),
+                        variant.study.technology.display()
+                    )));
+                }
                 technologies.insert(variant.study.technology.clone(), read.technology.clone());
                 read.technology
             }

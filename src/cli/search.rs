@@ -1,7 +1,7 @@
 //! `widefront search` and `widefront join`.
 
 use super::progress::Progress;
-use super::{Failure, Loaded, complain, load, print};
+use super::{Failure, complain, load, print};
 use crate::quantity::format as engineering;
 use crate::report;
 use crate::run::RunError;
@@ -39,8 +39,6 @@ pub struct SearchArguments {
 
 #[derive(Debug, clap::Args)]
 pub struct JoinArguments {
-    /// The study file that the parts were made with.
-    study: PathBuf,
     /// The run folder to make.
     out: PathBuf,
     /// The folders of all parts.
@@ -66,13 +64,14 @@ pub fn run(arguments: &SearchArguments) -> Result<(), Failure> {
         None => default_folder(&arguments.study, arguments.part)?,
     };
     let stop = stop_at_signals(&out)?;
-    let job = job(
-        &loaded,
-        &out,
-        arguments.resume,
-        arguments.part,
-        arguments.threads.map(usize::from),
-    );
+    let job = Job {
+        study: &loaded.file.study,
+        variants: &loaded.variants,
+        out: &out,
+        resume: arguments.resume,
+        part: arguments.part,
+        threads: arguments.threads.map(usize::from),
+    };
     let progress = Progress::new(arguments.quiet);
     let finished = session::run(&job, &stop, &progress);
     progress.end();
@@ -106,27 +105,8 @@ fn stop_at_signals(out: &Path) -> Result<Arc<AtomicBool>, Failure> {
 
 /// Joins parts.
 pub fn join(arguments: &JoinArguments) -> Result<(), Failure> {
-    let loaded = load(&arguments.study, &[])?;
-    let job = job(&loaded, &arguments.out, false, None, None);
-    let finished = join::join(&job, &arguments.parts, &Progress::new(true))?;
+    let finished = join::join(&arguments.out, &arguments.parts, &Progress::new(true))?;
     close(&arguments.out, finished)
-}
-
-fn job<'a>(
-    loaded: &'a Loaded,
-    out: &'a Path,
-    resume: bool,
-    part: Option<Part>,
-    threads: Option<usize>,
-) -> Job<'a> {
-    Job {
-        study: &loaded.file.study,
-        variants: &loaded.variants,
-        out,
-        resume,
-        part,
-        threads,
-    }
 }
 
 fn default_folder(study: &Path, part: Option<Part>) -> Result<PathBuf, Failure> {

@@ -4,25 +4,33 @@ use super::RunError;
 use super::folder::{RunFolder, cell_name, read_cell, read_run};
 use super::same::same_run;
 use super::session::{Finished, Job, Observer, Part, new_record, run};
-use super::variant::run_cells;
+use super::variant::{run_cells, variants_of_run};
 use serde_json::Value;
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 use std::sync::atomic::AtomicBool;
 
 /// Cells named in a message before the rest is only counted.
 const NAMED: usize = 20;
 
-/// Makes one run folder of parts: every part of the same run, every cell there and sound.
+/// Makes one run folder of parts: every part of the same run, every cell there and sound. What was asked is in the parts.
 ///
 /// # Errors
 /// [`RunError::Parts`] naming what is missing, [`RunError::Different`] for a part of another run, and all of [`run`].
-pub fn join(
-    job: &Job<'_>,
-    parts: &[PathBuf],
-    observer: &impl Observer,
-) -> Result<Finished, RunError> {
-    let space = job.study.space.as_ref().ok_or(RunError::NoSpace)?;
-    let wanted = new_record(job, space)?;
+pub fn join(out: &Path, parts: &[PathBuf], observer: &impl Observer) -> Result<Finished, RunError> {
+    let first = parts
+        .first()
+        .ok_or_else(|| RunError::Parts("no part is given".into()))?;
+    let (study, variants) = variants_of_run(first)?;
+    let job = Job {
+        study: &study,
+        variants: &variants,
+        out,
+        resume: false,
+        part: None,
+        threads: None,
+    };
+    let space = study.space.as_ref().ok_or(RunError::NoSpace)?;
+    let wanted = new_record(&job, space)?;
     let mut given: Vec<Option<Part>> = Vec::new();
     for part in parts {
         let mut there = read_run(part)?;
@@ -30,7 +38,7 @@ pub fn join(
         there["part"] = Value::Null;
         same_run(part, &there, &wanted)?;
     }
-    let cells = run_cells(space, job.variants.len());
+    let cells = run_cells(space, variants.len());
     let mut missing = Vec::new();
     let mut records = Vec::with_capacity(cells.len());
     for cell in &cells {
@@ -64,13 +72,13 @@ pub fn join(
             &given,
         )));
     }
-    let folder = if job.out.join("run.json").exists() {
+    let folder = if out.join("run.json").exists() {
         // A join that did not end is done again.
-        let folder = RunFolder::open(job.out)?;
-        same_run(job.out, &read_run(job.out)?, &wanted)?;
+        let folder = RunFolder::open(out)?;
+        same_run(out, &read_run(out)?, &wanted)?;
         folder
     } else {
-        RunFolder::create(job.out)?
+        RunFolder::create(out)?
     };
     folder
         .write_json("run.json", &wanted)
@@ -85,8 +93,7 @@ pub fn join(
     drop(folder);
     let job = Job {
         resume: true,
-        part: None,
-        ..*job
+        ..job
     };
     run(&job, &AtomicBool::new(false), observer)
 }

@@ -92,37 +92,66 @@ pub fn run_cells(space: &Space, variants: usize) -> Vec<RunCell> {
         .collect()
 }
 
-/// Study and technology of the variant that a cell of the run in `path` belongs to.
+/// The study of the run in `path` and the technologies of its list, or its single one.
+fn recorded(path: &Path) -> Result<(Study, Vec<Technology>), RunError> {
+    let run = read_run(path)?;
+    let study: Study = resolved(path, &run, "study")?;
+    let technologies = if study.sweep.technologies.is_empty() {
+        vec![resolved(path, &run, "technology")?]
+    } else {
+        resolved(path, &run, "technologies")?
+    };
+    if technologies.len() != study.sweep.technologies.len().max(1) {
+        return Err(damaged(path, "a technology is missing"));
+    }
+    Ok((study, technologies))
+}
+
+fn damaged(path: &Path, reason: &str) -> RunError {
+    RunError::Damaged {
+        path: path.join("run.json"),
+        reason: format!("is damaged: {reason}"),
+    }
+}
+
+/// The study of the run in `path`, and its variants.
 ///
 /// # Errors
 /// [`RunError::Damaged`] when the run's record holds none, or the system's.
+pub fn variants_of_run(path: &Path) -> Result<(Study, Vec<Variant>), RunError> {
+    let (study, technologies) = recorded(path)?;
+    let studies = study.variants();
+    // Technology is the outermost list.
+    let a_technology = studies.len() / technologies.len();
+    let variants = studies.into_iter().enumerate().map(|(i, study)| {
+        let technology = technologies[i / a_technology].clone();
+        let setup = Setup::new(&study, &technology).map_err(|e| damaged(path, &e.to_string()))?;
+        Ok(Variant {
+            study,
+            technology,
+            setup,
+        })
+    });
+    let variants = variants.collect::<Result<_, RunError>>()?;
+    Ok((study, variants))
+}
+
+/// Study and technology of the variant that a cell of the run in `path` belongs to.
+///
+/// # Errors
+/// As [`variants_of_run`].
 pub fn variant_of_cell(path: &Path, cell: usize) -> Result<(Study, Technology), RunError> {
-    let run = read_run(path)?;
-    let study: Study = resolved(path, &run, "study")?;
-    let damaged = |reason: &str| RunError::Damaged {
-        path: path.join("run.json"),
-        reason: format!("is damaged: {reason}"),
-    };
+    let (study, mut technologies) = recorded(path)?;
     let space = study
         .space
         .as_ref()
-        .ok_or(damaged("its study has no space"))?;
-    let a_variant = space::cells(space).len().max(1);
+        .ok_or_else(|| damaged(path, "its study has no space"))?;
+    let place = cell / space.cells().max(1);
     let mut variants = study.variants();
-    if cell / a_variant >= variants.len() {
-        return Err(damaged("it has too few cells"));
+    if place >= variants.len() {
+        return Err(damaged(path, "it has too few cells"));
     }
-    let variant = variants.swap_remove(cell / a_variant);
-    let listed = &study.sweep.technologies;
-    let technology = match listed.iter().position(|t| *t == variant.technology) {
-        Some(place) => {
-            let mut all: Vec<Technology> = resolved(path, &run, "technologies")?;
-            if place >= all.len() {
-                return Err(damaged("a technology is missing"));
-            }
-            all.swap_remove(place)
-        }
-        None => resolved(path, &run, "technology")?,
-    };
-    Ok((variant, technology))
+    let a_technology = variants.len() / technologies.len();
+    let technology = technologies.swap_remove(place / a_technology);
+    Ok((variants.swap_remove(place), technology))
 }

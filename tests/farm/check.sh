@@ -117,9 +117,10 @@ echo "farm: up after $((SECONDS - began)) s"
 
 "$WIDEFRONT" search "$STUDY" --quiet --out "$farm/unbroken" >/dev/null
 submit() {
-    local script=configs/slurm/$1.sbatch
+    local script=configs/slurm/$1.sbatch arguments=("$farm/run" "$PARTS")
+    [ "$1" = join ] || arguments=("$STUDY" "${arguments[@]}")
     shift
-    sbatch --parsable --chdir="$farm" "$@" "$script" "$STUDY" "$farm/run" "$PARTS"
+    sbatch --parsable --chdir="$farm" "$@" "$script" "${arguments[@]}"
 }
 array=$(submit search --array="1-$PARTS")
 jobs+=("$array")

@@ -148,7 +148,7 @@ fn change(text: &mut Vec<u8>, others: &[Vec<u8>], random: &mut Random) {
         }
         2 => text.truncate(place),
         3 | 4 => insert(text, place, random.of(&PIECES).as_bytes()),
-        5 | 6 | 7 => number(text, place, random),
+        5..=7 => number(text, place, random),
         8 => unit(text, place, random),
         9 => nest(text, place, random),
         10 => {
