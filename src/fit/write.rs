@@ -23,17 +23,15 @@ impl Existing {
             read,
             allowed: allowed.to_owned(),
         };
-        let document: DocumentMut = text.trim_start_matches('\u{feff}').parse().map_err(
-            |error: toml_edit::TomlError| {
-                let line = error.span().map_or(0, |span| {
-                    text[..span.start.min(text.len())].lines().count().max(1)
-                });
-                refuse(
-                    format!("{} (line {line})", error.message()),
-                    "a technology file in TOML",
-                )
-            },
-        )?;
+        let text = text.trim_start_matches('\u{feff}');
+        let document: DocumentMut = text.parse().map_err(|error: toml_edit::TomlError| {
+            let before = text.bytes().take(error.span().map_or(0, |span| span.start));
+            let line = 1 + before.filter(|byte| *byte == b'\n').count();
+            refuse(
+                format!("{} (line {line})", error.message()),
+                "a technology file in TOML",
+            )
+        })?;
         let schema = document.get("schema").and_then(Item::as_integer);
         if !document.is_empty() && schema != Some(crate::technology::SCHEMA) {
             let read = schema.map_or("no schema".to_owned(), |schema| {

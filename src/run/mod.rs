@@ -9,6 +9,7 @@ pub mod summary;
 mod supplies;
 mod table;
 pub mod variant;
+mod work;
 
 use serde::Serialize;
 use std::path::PathBuf;

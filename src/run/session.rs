@@ -7,19 +7,20 @@ use super::records::{
 use super::same::same_run;
 use super::summary::{Standing, Summary, front_hypervolume, hypervolume_reference, summarise};
 use super::variant::{RunCell, Variant, VariantLabel, run_cells};
+use super::work::in_order;
 use super::{RunError, digest};
 use crate::evaluate::{evaluate, loop_waveform};
-use crate::search::Context;
 use crate::search::cell::{CERTIFIED_RESIDUAL, CellFront, search_cell};
 use crate::search::space;
+use crate::search::{Context, Spirals};
 use crate::study::{Design, Space, Study};
 use crate::technology::Technology;
 use rayon::prelude::*;
 use std::collections::BTreeSet;
 use std::path::{Path, PathBuf};
 use std::str::FromStr;
-use std::sync::atomic::{AtomicBool, AtomicUsize, Ordering};
-use std::sync::{Mutex, OnceLock, mpsc};
+use std::sync::atomic::{AtomicBool, AtomicU64, AtomicUsize, Ordering};
+use std::sync::{Arc, Mutex, mpsc};
 use std::time::{Duration, SystemTime, UNIX_EPOCH};
 
 /// A share of a run's cells: the `index`-th (from 1) of `count`, dealt in turn.
@@ -277,11 +278,7 @@ fn search_missing(
         })?;
     let failed: Mutex<Option<RunError>> = Mutex::new(None);
     let finished = AtomicUsize::new(0);
-    // One cell at a time a thread: cells differ in cost, and a kill should lose as little as it can.
     let search = |context: &Context<'_>, cell: &RunCell| {
-        if stop.load(Ordering::Relaxed) {
-            return;
-        }
         let Some(front) = search_cell(context, &cell.cell, stop) else {
             return;
         };
@@ -299,35 +296,41 @@ fn search_missing(
             }
         }
     };
-    // A variant's spirals are tabulated when its first cell is at hand.
-    let contexts: Vec<OnceLock<Context<'_>>> =
-        job.variants.iter().map(|_| OnceLock::new()).collect();
+    // Spirals depend on these and the space alone.
+    let spirals_of = |cell: &RunCell| {
+        let study = &job.variants[cell.variant].study;
+        (study.technology.as_path(), study.frequency_hz.to_bits())
+    };
+    let spent = Arc::new(AtomicU64::new(0));
     let (working, ended) = mpsc::channel::<()>();
     std::thread::scope(|scope| {
-        let told = &contexts;
+        let told = Arc::clone(&spent);
         scope.spawn(move || {
             while ended.recv_timeout(TELL_EVERY) == Err(mpsc::RecvTimeoutError::Timeout) {
-                let spent = told.iter().filter_map(OnceLock::get).map(Context::spent);
-                observer.spent(spent.sum());
+                observer.spent(told.load(Ordering::Relaxed));
             }
         });
-        // Threads of their own: one of the pool that waits for spirals would take up another cell, which may want
-        // the very spirals it waits for.
-        let next = AtomicUsize::new(0);
-        let work = || {
-            while let Some(cell) = missing.get(next.fetch_add(1, Ordering::Relaxed)) {
+        in_order(
+            record.threads,
+            missing,
+            stop,
+            spirals_of,
+            |cell| {
                 let setup = &job.variants[cell.variant].setup;
-                let context = contexts[cell.variant].get_or_init(|| {
-                    pool.install(|| Context::new(setup, space, &record.objectives, record.seed))
-                });
-                search(context, cell);
-            }
-        };
-        std::thread::scope(|workers| {
-            for _ in 0..record.threads {
-                workers.spawn(work);
-            }
-        });
+                Arc::new(pool.install(|| Spirals::new(setup, space)))
+            },
+            |spirals, cell| {
+                let context = Context::sharing(
+                    &job.variants[cell.variant].setup,
+                    space,
+                    &record.objectives,
+                    record.seed,
+                    Arc::clone(spirals),
+                    Arc::clone(&spent),
+                );
+                search(&context, cell);
+            },
+        );
         drop(working);
     });
     match failed.into_inner() {

@@ -17,6 +17,7 @@ use problem::{CoilSource, SliceProblem};
 use quadratic::Row;
 use space::Cell;
 use std::collections::BTreeMap;
+use std::sync::Arc;
 use std::sync::atomic::{AtomicU64, Ordering};
 
 /// How hard a cell is searched.
@@ -53,17 +54,22 @@ pub struct Context<'a> {
     pub seed: u64,
     /// How hard each cell is searched.
     pub effort: Effort,
-    tables: BTreeMap<u32, SpiralTable>,
+    spirals: Arc<Spirals>,
     /// Assessments of all cells, the unfinished too; for progress alone.
-    spent: AtomicU64,
+    spent: Arc<AtomicU64>,
 }
+
+/// The spirals of a design space, tabulated by their turns. They depend on the technology, the carrier and the space, so
+/// studies that differ in nothing of these share them.
+#[derive(Debug)]
+pub struct Spirals(BTreeMap<u32, SpiralTable>);
 
 /// Narrowest trace tabulated for the direct network, whose trace is a result, m.
 const NARROWEST_TRACE_M: f64 = 1e-6;
 
-impl<'a> Context<'a> {
-    /// Tabulates the spirals of every number of turns.
-    pub fn new(setup: &'a Setup, space: &'a Space, objectives: &'a [Objective], seed: u64) -> Self {
+impl Spirals {
+    /// Tabulates every number of turns; none with a fixed inductor.
+    pub fn new(setup: &Setup, space: &Space) -> Self {
         let mut tables = BTreeMap::new();
         if let (Inductor::Spiral(process), Some(diameter)) = (&setup.inductor, &space.diameter_m) {
             let span_of = |range: &Range| [space::smallest(range), space::largest(range)];
@@ -81,14 +87,34 @@ impl<'a> Context<'a> {
                 tables.extend(table.map(|t| (turns, t)));
             }
         }
+        Self(tables)
+    }
+}
+
+impl<'a> Context<'a> {
+    /// With spirals of its own.
+    pub fn new(setup: &'a Setup, space: &'a Space, objectives: &'a [Objective], seed: u64) -> Self {
+        let spirals = Arc::new(Spirals::new(setup, space));
+        Self::sharing(setup, space, objectives, seed, spirals, Arc::default())
+    }
+
+    /// With spirals that others use too, counting assessments in `spent`.
+    pub fn sharing(
+        setup: &'a Setup,
+        space: &'a Space,
+        objectives: &'a [Objective],
+        seed: u64,
+        spirals: Arc<Spirals>,
+        spent: Arc<AtomicU64>,
+    ) -> Self {
         Self {
             setup,
             space,
             objectives,
             seed,
             effort: Effort::default(),
-            tables,
-            spent: AtomicU64::new(0),
+            spirals,
+            spent,
         }
     }
 
@@ -103,7 +129,7 @@ impl<'a> Context<'a> {
 
     /// The inductor of a slice with these turns; `None` when no such spiral closes.
     pub fn coil_source(&self, turns: Option<u32>) -> Option<CoilSource<'_>> {
-        let table = turns.and_then(|n| self.tables.get(&n));
+        let table = turns.and_then(|n| self.spirals.0.get(&n));
         SliceProblem::coil_source(&self.setup.inductor, table, turns)
     }
 

@@ -30,6 +30,19 @@ fn wanted(variable: &str, usual: u64) -> u64 {
     }
 }
 
+/// What earlier cases found and was mended.
+#[test]
+fn regress_found_inputs_are_answered() {
+    let readers = Readers::new();
+    for (name, input) in [
+        // The place of the fault counted before three byte-order marks were taken away lay within one.
+        ("technology merged into", "\u{feff}\u{feff}\u{feff}\u{e9}"),
+    ] {
+        let answer = readers.ask(name, input.as_bytes(), &mut Random::new(0));
+        assert!(matches!(answer, Answer::Refused), "{name}: {input}");
+    }
+}
+
 #[derive(Default)]
 struct Count {
     read: u64,
