@@ -1,7 +1,7 @@
 //! `widefront check`: what a study resolves to.
 
 use super::{Failure, Loaded, load, print};
-use crate::quantity::{format as engineering, format_in};
+use crate::quantity::format as engineering;
 use crate::run::variant::VariantLabel;
 use crate::search::space;
 use crate::stage::driver::{fastest_taper, inverter_capacitances};
@@ -65,20 +65,10 @@ fn described(loaded: &Loaded) -> String {
     }
     if loaded.variants.len() > 1 {
         line("above this, figures of", "variant 1".into());
+        let keys = study.sweep.listed();
         for (number, variant) in loaded.variants.iter().take(MOST_LISTED).enumerate() {
             let label = VariantLabel::new(variant);
-            line(
-                &format!("variant {}", number + 1),
-                format!(
-                    "{}, {}, stack {}, legs {}, {}, {}",
-                    label.technology,
-                    label.device,
-                    label.stack,
-                    label.legs,
-                    engineering(label.frequency_hz, "Hz"),
-                    format_in(label.temperature_k, "degC"),
-                ),
-            );
+            line(&format!("variant {}", number + 1), label.told(&keys));
         }
         if let Some(more) = loaded.variants.len().checked_sub(MOST_LISTED + 1) {
             line("", format!("and {} more", more + 1));

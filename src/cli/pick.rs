@@ -4,6 +4,7 @@ use super::{Failure, print};
 use crate::pick::{Catalogue, Condition, Figure, PickError, binding};
 use crate::run::folder::{read_all_fronts, read_front, read_run};
 use crate::run::records::{DesignList, DesignRecord};
+use crate::study::{Listed, Sweep};
 use serde_json::Value;
 use std::fmt::Write;
 use std::path::PathBuf;
@@ -41,6 +42,7 @@ impl From<PickError> for Failure {
 /// Picks and prints.
 pub fn run(arguments: &PickArguments) -> Result<(), Failure> {
     let run = read_run(&arguments.run)?;
+    let table = Table::new(&run["study"]);
     let list = if arguments.all {
         read_all_fronts(&arguments.run)?
     } else {
@@ -68,11 +70,7 @@ pub fn run(arguments: &PickArguments) -> Result<(), Failure> {
         .collect::<Result<_, _>>()?;
     let found = catalogue.pick(&conditions, &best);
     if found.is_empty() {
-        return Err(Failure::Run(nothing(
-            &catalogue,
-            &conditions,
-            &run["study"],
-        )));
+        return Err(Failure::Run(nothing(&catalogue, &conditions, &table)));
     }
     if arguments.json {
         let list = DesignList {
@@ -82,56 +80,74 @@ pub fn run(arguments: &PickArguments) -> Result<(), Failure> {
             .map_err(|e| Failure::Run(format!("writing JSON: {e}")))?;
         return print(&format!("{text}\n"));
     }
-    let mut text = header();
+    let mut text = table.header();
     for design in found {
-        row(&mut text, design, &run["study"]);
+        table.row(&mut text, design);
     }
     print(&text)
 }
 
-fn header() -> String {
-    format!(
-        "{:<10} {:>7} {:>6} {:>7} {:>7} {:>7} {:>6} {:>6} {:>7}  {}\n",
-        "design",
-        "supply",
-        "Q_L",
-        "W_n",
-        "W_p",
-        "R_opt",
-        "eff",
-        "power",
-        "area",
-        "limits that bind"
-    ) + &format!(
-        "{:<10} {:>7} {:>6} {:>7} {:>7} {:>7} {:>6} {:>6} {:>7}\n",
-        "", "V", "", "um", "um", "ohm", "%", "dBm", "mm^2"
-    )
+/// How designs are printed: in a sweep with what tells their variants apart.
+struct Table<'a> {
+    study: &'a Value,
+    listed: Vec<Listed>,
 }
 
-fn row(text: &mut String, design: &DesignRecord, study: &Value) {
-    let Some(f) = &design.evaluation.figures else {
-        return;
-    };
-    let d = &design.evaluation.design;
-    // Writing to a String cannot fail.
-    let _ = writeln!(
-        text,
-        "{:<10} {:>7.3} {:>6.3} {:>7.1} {:>7.1} {:>7.3} {:>6.2} {:>6.2} {:>7.4}  {}",
-        design.id,
-        d.supply_v,
-        d.loaded_q,
-        d.nmos_width_m * 1e6,
-        d.nmos_width_m * d.width_ratio * 1e6,
-        f.optimum_resistance_ohm,
-        100.0 * f.efficiency,
-        f.output_power_dbm,
-        f.area_m2 * 1e6,
-        binding(study, design).join(" "),
-    );
+impl<'a> Table<'a> {
+    fn new(study: &'a Value) -> Self {
+        let sweep: Option<Sweep> = serde_json::from_value(study["sweep"].clone()).ok();
+        Self {
+            study,
+            listed: sweep.map_or(Vec::new(), |s| s.listed()),
+        }
+    }
+
+    fn header(&self) -> String {
+        let end = if self.listed.is_empty() {
+            "limits that bind"
+        } else {
+            "variant; limits that bind"
+        };
+        format!(
+            "{:<10} {:>7} {:>6} {:>7} {:>7} {:>7} {:>6} {:>6} {:>7}  {end}\n",
+            "design", "supply", "Q_L", "W_n", "W_p", "R_opt", "eff", "power", "area",
+        ) + &format!(
+            "{:<10} {:>7} {:>6} {:>7} {:>7} {:>7} {:>6} {:>6} {:>7}\n",
+            "", "V", "", "um", "um", "ohm", "%", "dBm", "mm^2"
+        )
+    }
+
+    fn row(&self, text: &mut String, design: &DesignRecord) {
+        let Some(f) = &design.evaluation.figures else {
+            return;
+        };
+        let d = &design.evaluation.design;
+        let limits = binding(self.study, design).join(" ");
+        let end = match &design.variant {
+            Some(label) if !self.listed.is_empty() => {
+                format!("{}; {limits}", label.told(&self.listed))
+            }
+            _ => limits,
+        };
+        let line = format!(
+            "{:<10} {:>7.3} {:>6.3} {:>7.1} {:>7.1} {:>7.3} {:>6.2} {:>6.2} {:>7.4}  {end}",
+            design.id,
+            d.supply_v,
+            d.loaded_q,
+            d.nmos_width_m * 1e6,
+            d.nmos_width_m * d.width_ratio * 1e6,
+            f.optimum_resistance_ohm,
+            100.0 * f.efficiency,
+            f.output_power_dbm,
+            f.area_m2 * 1e6,
+        );
+        // Writing to a String cannot fail.
+        let _ = writeln!(text, "{}", line.trim_end());
+    }
 }
 
 /// Why nothing fits, and what comes nearest.
-fn nothing(catalogue: &Catalogue, conditions: &[Condition], study: &Value) -> String {
+fn nothing(catalogue: &Catalogue, conditions: &[Condition], table: &Table<'_>) -> String {
     const NEAREST: usize = 3;
     let mut text = "no design looked at meets all conditions\n".to_owned();
     let percent = |x: f64| format!("{:.2} %", 100.0 * x);
@@ -154,12 +170,12 @@ fn nothing(catalogue: &Catalogue, conditions: &[Condition], study: &Value) -> St
         let _ = writeln!(text, "  {} {side} {bound}: {verdict}", condition.figure.key);
     }
     let _ = writeln!(text, "  nearest designs:");
-    for line in header().lines() {
+    for line in table.header().lines() {
         let _ = writeln!(text, "  {line}");
     }
     for (design, lacks) in catalogue.nearest_designs(conditions, NEAREST) {
         let mut line = String::new();
-        row(&mut line, design, study);
+        table.row(&mut line, design);
         let lacks: Vec<String> = conditions
             .iter()
             .zip(lacks)

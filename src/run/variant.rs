@@ -3,6 +3,7 @@
 use super::RunError;
 use super::folder::{read_run, resolved};
 use crate::evaluate::Setup;
+use crate::quantity::{format as engineering, format_in};
 use crate::search::space::{self, Cell};
 use crate::study::{Listed, Space, Study};
 use crate::technology::Technology;
@@ -49,6 +50,23 @@ impl VariantLabel {
             frequency_hz: study.frequency_hz,
             temperature_k: study.temperature_k,
         }
+    }
+
+    /// Its values of `keys` in words: `2 legs, 870 MHz`.
+    pub fn told(&self, keys: &[Listed]) -> String {
+        let words: Vec<String> = keys
+            .iter()
+            .map(|key| match key {
+                Listed::Technology => self.technology.clone(),
+                Listed::Device => self.device.clone(),
+                Listed::Stack => format!("stack {}", self.stack),
+                Listed::Legs if self.legs == 1 => "1 leg".into(),
+                Listed::Legs => format!("{} legs", self.legs),
+                Listed::Frequency => engineering(self.frequency_hz, "Hz"),
+                Listed::Temperature => format_in(self.temperature_k, "degC"),
+            })
+            .collect();
+        words.join(", ")
     }
 
     /// Its values of `keys`: equal for variants of one group.

@@ -1,6 +1,8 @@
 //! The search: the design space cut into cells, each cell's Pareto front traced by constrained optimisation.
 
 pub mod cell;
+pub mod constrained;
+pub mod curvature;
 pub mod front;
 pub mod problem;
 pub mod quadratic;

@@ -4,8 +4,8 @@
 //! right on that kink. So two more variables stand for the positive parts, held above v_r and above 0: since every figure
 //! worsens with them they settle on the maximum, and the problem is smooth.
 
+use super::constrained::{Assessment, Constrained, Linear, MOST_CONSTRAINTS};
 use super::quadratic::{MOST_VARIABLES, Row};
-use super::solver::{Assessment, Constrained, Linear, MOST_CONSTRAINTS};
 use super::space::{Slice, Values, Variable};
 use crate::evaluate::{FixedInductor, Setup, core, margins, performance};
 use crate::numerics::root::increasing_root;

@@ -1,8 +1,8 @@
 //! What a slice is known to reach: targets with the best score under each, and the solved points to start from.
 
 use super::cell::CERTIFIED_RESIDUAL;
+use super::curvature::Curvature;
 use super::quadratic::{MOST_VARIABLES, Row};
-use super::solver::Curvature;
 use crate::search::problem::Goal;
 use crate::study::Objective;
 

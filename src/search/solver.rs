@@ -2,15 +2,14 @@
 //!
 //! Each iteration solves a quadratic model of the Lagrangian under the linearised constraints
 //! ([`super::quadratic`]), steps along it by Han's exact merit function (Han, JOTA 22, 1977; penalties after Powell,
-//! 1978), with a second-order correction (Fletcher 1982) where curvature of the constraints would cut the step,
-//! and updates the model by damped BFGS (Powell 1978; Nocedal and Wright, *Numerical Optimization*, ch. 18).
+//! 1978), with a second-order correction (Fletcher 1982) where curvature of the constraints would cut the step, and
+//! learns the model's curvature ([`super::curvature`]).
 
+use super::constrained::{Assessment, Constrained, FEASIBLE, MOST_CONSTRAINTS};
+use super::curvature::{Curvature, dot, learn, no_curvature};
 use super::quadratic::{HalfSpace, MOST_VARIABLES, Minimum, NoMinimum, Row, minimise};
 use argmin::core::{Error, IterState, KV, Problem, Solver, TerminationReason, TerminationStatus};
 use arrayvec::ArrayVec;
-
-/// Most general constraints of a problem.
-pub const MOST_CONSTRAINTS: usize = 28;
 
 /// Limits broken by more than `FAR`, which in so many models running are not narrowed to a part `NARROWED`, have no point
 /// in common near here. A model in which they contradict each other counts for more.
@@ -19,45 +18,12 @@ const CONTRADICTION: u32 = 6;
 const NARROWED: f64 = 0.8;
 const FAR: f64 = 1e-3;
 
-/// Violation under which a point counts as feasible.
-pub const FEASIBLE: f64 = 1e-7;
-
 /// A step need only be better than the worst of this many points before and the present one (Grippo, Lampariello and
 /// Lucidi 1986): asked to be better than the present one, steps along curved limits are cut short and zigzag.
 const MEMORY: usize = 3;
 
 /// Lengths tried along a step: the last is about 1e-5 of it.
 const MOST_TRIALS: usize = 13;
-
-/// A function's value and gradient.
-#[derive(Debug, Clone, Copy)]
-pub struct Linear {
-    /// Value.
-    pub value: f64,
-    /// Gradient.
-    pub gradient: Row,
-}
-
-/// Cost and constraints at one point.
-#[derive(Debug, Clone)]
-pub struct Assessment {
-    /// To be minimised.
-    pub cost: Linear,
-    /// Each to be ≥ 0, scaled to order 1.
-    pub constraints: ArrayVec<Linear, MOST_CONSTRAINTS>,
-    /// What the problem's owner wants to know of the point; the solver only carries it along.
-    pub merits: [f64; 3],
-}
-
-/// A smooth problem in a box.
-pub trait Constrained {
-    /// Number of variables.
-    fn size(&self) -> usize;
-    /// Lower and upper bound of a variable.
-    fn bounds(&self, variable: usize) -> (f64, f64);
-    /// Cost and constraints with gradients; `None` where they do not exist.
-    fn assess(&self, point: &Row) -> Option<Assessment>;
-}
 
 /// How an optimisation ended.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -73,9 +39,6 @@ pub enum Ended {
     /// Still running when the iterations ran out.
     Unfinished,
 }
-
-/// Curvature carried from one problem to a neighbour.
-pub type Curvature = [Row; MOST_VARIABLES];
 
 /// The solver with its state; read it after the run.
 #[derive(Debug, Clone)]
@@ -102,15 +65,6 @@ pub struct SequentialQuadratic {
     waited: u32,
     /// The last points left behind, newest last.
     passed: ArrayVec<Assessment, MEMORY>,
-}
-
-/// The identity.
-pub fn no_curvature() -> Curvature {
-    let mut h = [[0.0; MOST_VARIABLES]; MOST_VARIABLES];
-    for (i, row) in h.iter_mut().enumerate() {
-        row[i] = 1.0;
-    }
-    h
 }
 
 impl SequentialQuadratic {
@@ -187,48 +141,6 @@ impl SequentialQuadratic {
                 .sum::<f64>()
     }
 
-    /// `∇cost − Σ multiplier·∇constraint`.
-    fn lagrangian_gradient(&self, n: usize, a: &Assessment) -> Row {
-        let mut g = a.cost.gradient;
-        for (c, m) in a.constraints.iter().zip(&self.multipliers) {
-            for (slot, slope) in g.iter_mut().zip(&c.gradient).take(n) {
-                *slot -= m * slope;
-            }
-        }
-        g
-    }
-
-    /// Damped BFGS: `step` from `before` to `after` with the current multipliers.
-    fn learn(&mut self, n: usize, step: &Row, before: &Assessment, after: &Assessment) {
-        let (g0, g1) = (
-            self.lagrangian_gradient(n, before),
-            self.lagrangian_gradient(n, after),
-        );
-        let mut y = [0.0; MOST_VARIABLES];
-        let mut hs = [0.0; MOST_VARIABLES];
-        for i in 0..n {
-            y[i] = g1[i] - g0[i];
-            hs[i] = (0..n).map(|k| self.curvature[i][k] * step[k]).sum();
-        }
-        let shs = dot(n, step, &hs);
-        let sy = dot(n, step, &y);
-        if shs <= f64::MIN_POSITIVE || !sy.is_finite() {
-            return;
-        }
-        if sy < 0.2 * shs {
-            let theta = 0.8 * shs / (shs - sy);
-            for i in 0..n {
-                y[i] = theta * y[i] + (1.0 - theta) * hs[i];
-            }
-        }
-        let sy = dot(n, step, &y);
-        for i in 0..n {
-            for k in 0..n {
-                self.curvature[i][k] += y[i] * y[k] / sy - hs[i] * hs[k] / shs;
-            }
-        }
-    }
-
     fn assess<O: Constrained>(
         problem: &mut Problem<O>,
         point: &Row,
@@ -271,7 +183,7 @@ impl SequentialQuadratic {
             .iter()
             .copied()
             .collect();
-        self.violation = violation(&a);
+        self.violation = a.violation();
         self.residual = self.measure(n, owner, &a, &minimum);
         let length: f64 = step[..n].iter().fold(0.0, |m, s| m.max(s.abs()));
         if self.residual <= self.tolerance && self.violation <= FEASIBLE {
@@ -330,7 +242,7 @@ impl SequentialQuadratic {
                     return Ok(());
                 }
                 if trial == 0
-                    && violation(&next) > self.violation.max(self.tolerance)
+                    && next.violation() > self.violation.max(self.tolerance)
                     && self.correct(problem, &a, &next, &step, enough)?
                 {
                     return Ok(());
@@ -356,7 +268,9 @@ impl SequentialQuadratic {
         for i in 0..n {
             step[i] = point[i] - self.point[i];
         }
-        self.learn(n, &step, &before, &after);
+        let slopes = |a: &Assessment| a.lagrangian_gradient(&self.multipliers);
+        let (earlier, later) = (slopes(&before), slopes(&after));
+        learn(&mut self.curvature, n, &step, &earlier, &later);
         if self.passed.is_full() {
             self.passed.pop_at(0);
         }
@@ -403,7 +317,7 @@ impl SequentialQuadratic {
         minimum: &Minimum,
     ) -> f64 {
         let general = a.constraints.len();
-        let mut gradient = self.lagrangian_gradient(n, a);
+        let mut gradient = a.lagrangian_gradient(&self.multipliers);
         let mut worst = self.violation;
         for i in 0..n {
             let (low, high) = problem.bounds(i);
@@ -420,16 +334,6 @@ impl SequentialQuadratic {
         }
         worst
     }
-}
-
-fn dot(n: usize, a: &Row, b: &Row) -> f64 {
-    (0..n).map(|i| a[i] * b[i]).sum()
-}
-
-fn violation(a: &Assessment) -> f64 {
-    a.constraints
-        .iter()
-        .fold(0.0, |worst, c| worst.max(-c.value))
 }
 
 /// The state argmin keeps: parameters and cost; everything else is the solver's own.
@@ -482,6 +386,7 @@ impl<O: Constrained> Solver<O, SolverState> for SequentialQuadratic {
 
 #[cfg(test)]
 mod tests {
+    use super::super::constrained::Linear;
     use super::*;
     use argmin::core::Executor;
 

@@ -7,10 +7,12 @@
 
 use super::Context;
 use super::cell::CERTIFIED_RESIDUAL;
+use super::constrained::FEASIBLE;
+use super::curvature::{Curvature, no_curvature};
 use super::problem::{Goal, SliceProblem};
 use super::quadratic::{MOST_VARIABLES, Row};
 use super::reach::{NO_TARGET, Reached, Solved, Target, better};
-use super::solver::{Curvature, Ended, FEASIBLE, SequentialQuadratic, no_curvature};
+use super::solver::{Ended, SequentialQuadratic};
 use super::space::{Cell, Slice};
 use crate::study::Objective;
 use argmin::core::Executor;

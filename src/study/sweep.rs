@@ -63,6 +63,20 @@ impl Sweep {
         *self == Self::default()
     }
 
+    /// Which are listed.
+    pub fn listed(&self) -> Vec<Listed> {
+        let given = [
+            !self.technologies.is_empty(),
+            !self.devices.is_empty(),
+            !self.stacks.is_empty(),
+            !self.legs.is_empty(),
+            !self.frequencies_hz.is_empty(),
+            !self.temperatures_k.is_empty(),
+        ];
+        let named = LISTED.iter().zip(given).filter(|(_, given)| *given);
+        named.map(|((_, listed), _)| *listed).collect()
+    }
+
     /// Variants: the product of the lists' lengths.
     pub fn variants(&self) -> usize {
         [
