@@ -2,14 +2,12 @@
 
 use super::bars::{self, Band, Frame, Row};
 use super::chosen::chosen;
-use super::style::CATEGORIES;
+use super::style::{CATEGORIES, OTHER, loss_colours};
 use super::{Drawn, FigureInput};
 use crate::budget::LOSS_NAMES;
 use plotters::coord::Shift;
 use plotters::prelude::*;
 
-/// Losses drawn with a colour of their own at most; the others are put together.
-const BANDS: usize = 7;
 /// Per cent of the total power below which a band cannot be seen.
 const SEEN: f64 = 0.3;
 
@@ -31,15 +29,15 @@ pub fn draw_losses<B: DrawingBackend>(
     let mut order: Vec<usize> = (0..LOSS_NAMES.len()).collect();
     order.sort_by(|&a, &b| largest(b).total_cmp(&largest(a)).then(a.cmp(&b)));
     let seen = order.iter().filter(|&&i| largest(i) > SEEN).count();
-    let (shown, rest) = order.split_at(seen.min(BANDS));
+    let (shown, rest) = order.split_at(seen.min(OTHER));
     let mut bands: Vec<Band> = shown
         .iter()
-        .zip(CATEGORIES)
+        .zip(loss_colours(shown))
         .map(|(&i, colour)| (LOSS_NAMES[i].replace('_', " "), colour))
         .collect();
     let other = |t: &[f64; 11]| rest.iter().map(|&i| t[i]).sum::<f64>();
     if shares.iter().any(|t| other(t) > SEEN) {
-        bands.push(("other".into(), CATEGORIES[BANDS]));
+        bands.push(("other".into(), CATEGORIES[OTHER]));
     }
     let rows: Vec<Row> = designs
         .iter()

@@ -10,6 +10,8 @@ pub struct Chosen<'a> {
     pub id: &'a str,
     /// Its figures.
     pub figures: &'a Figures,
+    /// Carrier of its variant, Hz; none outside sweeps.
+    pub carrier_hz: Option<f64>,
     /// What it was chosen for.
     pub why: String,
 }
@@ -27,9 +29,10 @@ impl Chosen<'_> {
 /// The most efficient, the smallest, the one of most output power, and the most efficient from a quarter, half and three quarters of the
 /// way up the front's output powers (dBm) on; each design once, output power rising.
 pub fn chosen(designs: &[DesignRecord]) -> Vec<Chosen<'_>> {
-    let known: Vec<(&str, &Figures)> = designs
+    let carrier_hz = |d: &DesignRecord| d.variant.as_ref().map(|v| v.frequency_hz);
+    let known: Vec<(&str, &Figures, Option<f64>)> = designs
         .iter()
-        .filter_map(|d| Some((d.id.as_str(), d.evaluation.figures.as_ref()?)))
+        .filter_map(|d| Some((d.id.as_str(), d.evaluation.figures.as_ref()?, carrier_hz(d))))
         .collect();
     let power = |f: &Figures| f.output_power_dbm;
     let low = known.iter().map(|d| power(d.1)).fold(f64::MAX, f64::min);
@@ -54,10 +57,15 @@ pub fn chosen(designs: &[DesignRecord]) -> Vec<Chosen<'_>> {
     }
     let mut list: Vec<Chosen<'_>> = Vec::new();
     for (found, why) in picks {
-        if let Some(&(id, figures)) = found
+        if let Some(&(id, figures, carrier_hz)) = found
             && !list.iter().any(|c| c.id == id)
         {
-            list.push(Chosen { id, figures, why });
+            list.push(Chosen {
+                id,
+                figures,
+                carrier_hz,
+                why,
+            });
         }
     }
     list.sort_by(|a, b| power(a.figures).total_cmp(&power(b.figures)));

@@ -1,6 +1,6 @@
 //! The losses against NMOS width: stacked, the width of best efficiency marked.
 
-use super::style::{CATEGORIES, INK, axes, decimals, heading, text};
+use super::style::{CATEGORIES, INK, OTHER, axes, decimals, heading, loss_colours, text};
 use super::{Drawn, reason};
 use crate::budget::LOSS_NAMES;
 use crate::evaluate::Figures;
@@ -8,9 +8,6 @@ use crate::run::records::WidthSweep;
 use plotters::coord::Shift;
 use plotters::prelude::*;
 use plotters::style::text_anchor::{HPos, Pos, VPos};
-
-/// Bands drawn with a colour of their own; smaller losses are put together.
-const BANDS: usize = 7;
 
 /// A loss that is slightly negative near soft switching (the drain's) is stacked as 0.
 pub fn draw<B: DrawingBackend>(area: &DrawingArea<B, Shift>, sweep: &WidthSweep) -> Drawn {
@@ -30,7 +27,7 @@ pub fn draw<B: DrawingBackend>(area: &DrawingArea<B, Shift>, sweep: &WidthSweep)
     let mut order: Vec<usize> = (0..LOSS_NAMES.len()).collect();
     let largest = |i: usize| terms.iter().map(|t| t[i]).fold(0.0, f64::max);
     order.sort_by(|&a, &b| largest(b).total_cmp(&largest(a)).then(a.cmp(&b)));
-    let (shown, rest) = order.split_at(BANDS);
+    let (shown, rest) = order.split_at(OTHER);
     let height = |t: &[f64; 11]| t.iter().sum::<f64>();
     let top = 1.05 * terms.iter().map(height).fold(0.0, f64::max);
 
@@ -74,7 +71,7 @@ pub fn draw<B: DrawingBackend>(area: &DrawingArea<B, Shift>, sweep: &WidthSweep)
     let mut floor = vec![0.0; rows.len()];
     let mut bands: Vec<(String, RGBColor, Vec<f64>)> = shown
         .iter()
-        .zip(CATEGORIES)
+        .zip(loss_colours(shown))
         .map(|(&i, colour)| {
             let name = LOSS_NAMES[i].replace('_', " ");
             (name, colour, terms.iter().map(|t| t[i]).collect())
@@ -84,7 +81,7 @@ pub fn draw<B: DrawingBackend>(area: &DrawingArea<B, Shift>, sweep: &WidthSweep)
         .iter()
         .map(|t| rest.iter().map(|&i| t[i]).sum())
         .collect();
-    bands.push(("other".into(), CATEGORIES[BANDS], others));
+    bands.push(("other".into(), CATEGORIES[OTHER], others));
     for (_, colour, values) in &bands {
         let ceiling: Vec<f64> = floor.iter().zip(values).map(|(f, v)| f + v).collect();
         let up = rows.iter().zip(&ceiling).map(|((w, _), y)| (*w, *y));

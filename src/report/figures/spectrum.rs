@@ -1,6 +1,6 @@
 //! Harmonics at the antenna below the carrier, chosen designs side by side, against the study's limits.
 
-use super::chosen::chosen;
+use super::chosen::{Chosen, chosen};
 use super::style::{CATEGORIES, FAINT, INK, heading, text};
 use super::{Drawn, FigureInput, reason};
 use plotters::coord::Shift;
@@ -17,6 +17,12 @@ const BOTTOM: i32 = 660;
 
 pub fn draw<B: DrawingBackend>(area: &DrawingArea<B, Shift>, input: &FigureInput<'_>) -> Drawn {
     let designs = chosen(input.designs);
+    // Designs of a sweep may have several carriers; then none is named.
+    let own = |c: &Chosen<'_>| c.carrier_hz.unwrap_or(input.frequency_hz);
+    let carrier_hz = designs
+        .first()
+        .map(own)
+        .filter(|hz| designs.iter().all(|c| own(c) == *hz));
     let levels: Vec<[Option<f64>; 4]> = designs
         .iter()
         .map(|c| {
@@ -104,11 +110,10 @@ pub fn draw<B: DrawingBackend>(area: &DrawingArea<B, Shift>, input: &FigureInput
             ))
             .map_err(reason)?;
         }
-        let gigahertz = f64::from(harmonic) * input.frequency_hz * 1e-9;
-        for (line, away) in [
-            (format!("{harmonic} f"), 12),
-            (format!("{gigahertz:.2} GHz"), 44),
-        ] {
+        let at = carrier_hz.map_or(String::new(), |hz| {
+            format!("{:.2} GHz", f64::from(harmonic) * hz * 1e-9)
+        });
+        for (line, away) in [(format!("{harmonic} f"), 12), (at, 44)] {
             area.draw(&Text::new(line, (middle, BOTTOM + away), below.clone()))
                 .map_err(reason)?;
         }

@@ -32,6 +32,22 @@ pub const CATEGORIES: [RGBColor; 8] = [
     RGBColor(140, 140, 140),
 ];
 
+/// Losses that have the same colour in every figure, by their place in the budget, in the order of [`CATEGORIES`]:
+/// conduction, gate, inductor, drain charge, driver chain, capacitor, harmonics.
+const COLOURED_LOSSES: [usize; OTHER] = [0, 3, 5, 1, 4, 6, 8];
+/// Place in [`CATEGORIES`] of what is put together.
+pub const OTHER: usize = 7;
+
+/// Colours of at most [`OTHER`] losses: rare ones take what the usual ones leave free.
+pub fn loss_colours(shown: &[usize]) -> Vec<RGBColor> {
+    let usual = |loss: &usize| COLOURED_LOSSES.iter().position(|l| l == loss);
+    let mut free = (0..OTHER).filter(|&slot| !shown.contains(&COLOURED_LOSSES[slot]));
+    let slots = shown
+        .iter()
+        .map(|loss| usual(loss).or_else(|| free.next()).unwrap_or(OTHER));
+    slots.map(|slot| CATEGORIES[slot]).collect()
+}
+
 /// A ramp from dark blue over grey to ochre, rising in lightness throughout, so that it reads in grey and to
 /// colour-blind eyes.
 const RAMP: [(u8, u8, u8); 5] = [
@@ -118,4 +134,20 @@ where
         .y_desc(names[1])
         .draw()
         .map_err(reason)
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn law_losses_keep_their_colours_and_share_none() {
+        let all = loss_colours(&COLOURED_LOSSES);
+        assert_eq!(all, CATEGORIES[..OTHER]);
+        let some = loss_colours(&[9, 5, 2, 3, 10, 0, 7]);
+        assert_eq!([some[1], some[3], some[5]], [all[2], all[1], all[0]]);
+        for (i, colour) in some.iter().enumerate() {
+            assert!(!some[..i].contains(colour) && *colour != CATEGORIES[OTHER]);
+        }
+    }
 }
