@@ -1,7 +1,7 @@
 //! Fronts against evolutionary baselines and against long reference fronts.
 //!
-//! `cargo bench --bench front` compares; `cargo bench --bench front -- reference` makes the references anew (some ten
-//! minutes of two cores). Cells: both ends and the middle of the default study's diagonal, and the middle of the open
+//! `cargo bench --bench front` compares; `cargo bench --bench front -- reference` makes the references anew; names of
+//! cells, as `default-40`, restrict both. Cells: both ends and the middle of the default study's diagonal, and the middle of the open
 //! 130 nm study, the stacked study and the default study with two legs.
 //!
 //! A reference is the union of everything that NSGA-II (Deb, Pratap, Agarwal and Meyarivan 2002) and NSGA-III (Deb and Jain
@@ -13,7 +13,7 @@ use forge_core::algo::{NsgaII, NsgaIII};
 use forge_core::problem::{MultiProblem, multi_func};
 use forge_core::solution::ParetoFront;
 use forge_core::termination::Termination;
-use std::cell::RefCell;
+use std::cell::{Cell, RefCell};
 use std::fmt::Write as _;
 use std::path::{Path, PathBuf};
 use std::sync::atomic::{AtomicBool, AtomicUsize, Ordering};
@@ -24,7 +24,7 @@ use widefront::run::summary::hypervolume_reference;
 use widefront::search::cell::{best_efficiencies, point_costs, search_cell};
 use widefront::search::front::{Costs, non_dominated, spread};
 use widefront::search::problem::{Goal, SliceProblem};
-use widefront::search::space::{Cell, Slice, cells, slices};
+use widefront::search::space::{self, Slice, cells, slices};
 use widefront::search::{Context, Effort};
 use widefront::study::{Objective, Study};
 use widefront::technology::Technology;
@@ -88,7 +88,11 @@ struct Whole<'a> {
     problems: Vec<SliceProblem<'a>>,
     area_scale: f64,
     seen: RefCell<Vec<Costs>>,
+    /// Filtered when so many are seen: twice what was kept, or each new one would cost a filtering.
+    most_seen: Cell<usize>,
 }
+
+const LEAST_FILTERED: usize = 1 << 16;
 
 impl<'a> Whole<'a> {
     fn new(context: &'a Context<'a>, slices: &'a [Slice], area_m2: f64) -> Self {
@@ -108,6 +112,7 @@ impl<'a> Whole<'a> {
             problems: slices.iter().filter_map(problem).collect(),
             area_scale: area_m2,
             seen: RefCell::new(Vec::new()),
+            most_seen: Cell::new(LEAST_FILTERED),
         }
     }
 
@@ -126,9 +131,10 @@ impl<'a> Whole<'a> {
         let [efficiency, power, area] = merits.objectives.map(f64::exp);
         let mut seen = self.seen.borrow_mut();
         seen.push([-efficiency, -power, area]);
-        if seen.len() >= 1 << 16 {
+        if seen.len() >= self.most_seen.get() {
             let kept = non_dominated(&seen).into_iter().map(|i| seen[i]).collect();
             *seen = kept;
+            self.most_seen.set(LEAST_FILTERED.max(2 * seen.len()));
         }
         vec![-efficiency, -10.0 * power, area / self.area_scale]
     }
@@ -189,7 +195,7 @@ fn volume(points: &[Costs], area_m2: f64) -> f64 {
 struct Place<'a> {
     name: String,
     context: Context<'a>,
-    cell: Cell,
+    cell: space::Cell,
     area_m2: f64,
 }
 
@@ -383,7 +389,12 @@ fn compare(place: &Place<'_>) -> String {
 
 fn main() {
     let subjects = subjects();
-    let remake = std::env::args().any(|a| a == "reference");
+    let asked: Vec<String> = std::env::args()
+        .skip(1)
+        .filter(|a| !a.starts_with('-'))
+        .collect();
+    let remake = asked.iter().any(|a| a == "reference");
+    let named: Vec<&String> = asked.iter().filter(|a| *a != "reference").collect();
     let setups: Vec<Setup> = subjects
         .iter()
         .map(|s| Setup::new(&s.study, &s.technology).expect("setup"))
@@ -396,6 +407,9 @@ fn main() {
                 .cells
                 .iter()
                 .map(move |&cell| (subject, setup, cell))
+        })
+        .filter(|(subject, _, cell)| {
+            named.is_empty() || named.iter().any(|n| **n == cell_name(subject, *cell))
         })
         .collect();
     // Threads of their own: a thread of the pool that waits for spirals would take up another cell meanwhile.
@@ -414,11 +428,15 @@ fn main() {
     });
 }
 
+fn cell_name(subject: &Subject, index: usize) -> String {
+    format!("{}-{index:02}", subject.name)
+}
+
 fn worked(subject: &Subject, setup: &Setup, index: usize, remake: bool) -> String {
     let space = subject.study.space.as_ref().expect("space");
     let search = &subject.study.search;
     let mut place = Place {
-        name: format!("{}-{index:02}", subject.name),
+        name: cell_name(subject, index),
         context: Context::new(setup, space, &search.objectives, search.seed),
         cell: cells(space)[index],
         area_m2: hypervolume_reference(&subject.study, setup, space).area_m2,
