@@ -1,7 +1,7 @@
 //! Fronts against evolutionary baselines and against long reference fronts.
 //!
-//! `cargo bench --bench front` compares; `cargo bench --bench front -- reference` makes the references anew; names of
-//! cells, as `default-40`, restrict both. Cells: both ends and the middle of the default study's diagonal, and the middle of the open
+//! `cargo bench --bench front` compares; `cargo bench --bench front -- reference` makes the references anew,
+//! `-- own` leaves the baselines out; names of cells, as `default-40`, restrict all three. Cells: both ends and the middle of the default study's diagonal, and the middle of the open
 //! 130 nm study, the stacked study and the default study with two legs.
 //!
 //! A reference is the union of everything that NSGA-II (Deb, Pratap, Agarwal and Meyarivan 2002) and NSGA-III (Deb and Jain
@@ -39,6 +39,8 @@ const DIVISIONS: usize = 23;
 const INFEASIBLE: f64 = 1e3;
 /// Points of a reference are no closer than this part of its span.
 const REFERENCE_SPACING: f64 = 0.01;
+/// Points that a baseline saw are first thinned to this part of their span, then to as many as the search has.
+const FINE: f64 = 0.003;
 /// Demands asked of a cell where the efficiency at equal power and area is compared.
 const DEMANDS: usize = 400;
 /// Halvings of the spacing that thins a reference to as many points as the search has.
@@ -295,11 +297,15 @@ fn read_reference(name: &str) -> (Vec<Costs>, f64) {
     (points.collect(), all)
 }
 
+/// A reference is printed to eight digits; what its rounding asks for too much is let go.
+const ROUNDING: f64 = 1e-6;
+
 /// A cell asked for the powers and areas of points of its reference.
 struct Demanded {
     demands: usize,
     assessments: u64,
-    /// Worst of (reference − answer) / reference, 1 where nothing answers.
+    unanswered: usize,
+    /// Worst of (reference − answer) / reference among what was answered.
     shortfall: f64,
     /// Hypervolume of the answers over that of the points asked for: fronts compared at equal density.
     volume_ratio: f64,
@@ -308,12 +314,15 @@ struct Demanded {
 fn demanded(place: &Place<'_>, reference: &[Costs]) -> Demanded {
     let step = reference.len().div_ceil(DEMANDS);
     let asked: Vec<Costs> = reference.iter().step_by(step).copied().collect();
-    let demands: Vec<[f64; 2]> = asked.iter().map(|p| [-p[1], p[2]]).collect();
+    let demands: Vec<[f64; 2]> = asked
+        .iter()
+        .map(|p| [-p[1] * (1.0 - ROUNDING), p[2] * (1.0 + ROUNDING)])
+        .collect();
     let (answers, assessments) = best_efficiencies(&place.context, &place.cell, &demands);
     let pairs = asked.iter().zip(&answers);
     let shortfall = pairs
         .clone()
-        .map(|(p, answer)| answer.map_or(1.0, |best| 1.0 - best / -p[0]))
+        .filter_map(|(p, answer)| Some(1.0 - (*answer)? / -p[0]))
         .fold(0.0, f64::max);
     let answered: Vec<Costs> = pairs
         .filter_map(|(p, answer)| Some([-(*answer)?, p[1], p[2]]))
@@ -321,6 +330,7 @@ fn demanded(place: &Place<'_>, reference: &[Costs]) -> Demanded {
     Demanded {
         demands: asked.len(),
         assessments,
+        unanswered: asked.len() - answered.len(),
         shortfall,
         volume_ratio: volume(&answered, place.area_m2) / volume(&asked, place.area_m2),
     }
@@ -340,19 +350,17 @@ fn thinned_to(points: &[Costs], most: usize) -> Vec<Costs> {
     thinned(points, high)
 }
 
-fn compare(place: &Place<'_>) -> String {
+fn compare(place: &Place<'_>, budgets: &[u64]) -> String {
     let start = Instant::now();
     let (own, evaluations) = searched(place);
     let own_s = start.elapsed().as_secs_f64();
     let (reference, all) = read_reference(&place.name);
-    // At equal density: the reference thinned as the search thins its own points.
-    let spacing = 0.25 / place.context.effort.levels as f64;
     let ratio = |points: &[Costs]| volume(points, place.area_m2) / all;
     let as_many = thinned_to(&reference, own.len());
     let demanded = demanded(place, &reference);
     let mut line = format!(
         "{:<12} search    {evaluations:>8} {own_s:>7.2} s {:>5} points  volume {:.4}; of the reference thinned to {} points {:.4}\n\
-         {:<12} at {} powers and areas of the reference: volume {:.5} of its own, worst shortfall {:.4} % ({} assessments more)\n",
+         {:<12} at {} powers and areas of the reference: volume {:.5} of its own, worst shortfall {:.4} %, {} unanswered ({} assessments more)\n",
         place.name,
         own.len(),
         ratio(&own),
@@ -362,24 +370,26 @@ fn compare(place: &Place<'_>) -> String {
         demanded.demands,
         demanded.volume_ratio,
         100.0 * demanded.shortfall,
+        demanded.unanswered,
         demanded.assessments - evaluations.min(demanded.assessments),
     );
     let slices = slices(place.context.space, &place.cell);
     let whole = Whole::new(&place.context, &slices, place.area_m2);
-    for times in BUDGETS {
+    for &times in budgets {
         for (third, name) in [(false, "NSGA-II"), (true, "NSGA-III")] {
             let start = Instant::now();
             let front = evolve(&whole, third, evaluations * times);
             let seconds = start.elapsed().as_secs_f64();
             let last = population(&front, place.area_m2);
-            let seen = thinned(&whole.take(), spacing);
+            let seen = thinned_to(&thinned(&whole.take(), FINE), own.len());
             let _ = writeln!(
                 line,
-                "{:<12} {name:<9} {:>8} {seconds:>7.2} s {:>5} points  volume {:.4}  all it saw, thinned: {:.4}",
+                "{:<12} {name:<9} {:>8} {seconds:>7.2} s {:>5} points  volume {:.4}  all it saw, {} points: {:.4}",
                 "",
                 front.evaluations,
                 last.len(),
                 ratio(&last),
+                seen.len(),
                 ratio(&seen),
             );
         }
@@ -393,8 +403,16 @@ fn main() {
         .skip(1)
         .filter(|a| !a.starts_with('-'))
         .collect();
-    let remake = asked.iter().any(|a| a == "reference");
-    let named: Vec<&String> = asked.iter().filter(|a| *a != "reference").collect();
+    let is_asked = |word: &str| asked.iter().any(|a| a == word);
+    let task = match (is_asked("reference"), is_asked("own")) {
+        (true, _) => Task::Reference,
+        (_, true) => Task::Own,
+        _ => Task::Compare,
+    };
+    let named: Vec<&String> = asked
+        .iter()
+        .filter(|a| *a != "reference" && *a != "own")
+        .collect();
     let setups: Vec<Setup> = subjects
         .iter()
         .map(|s| Setup::new(&s.study, &s.technology).expect("setup"))
@@ -421,18 +439,25 @@ fn main() {
                 while let Some(&(subject, setup, index)) =
                     work.get(next.fetch_add(1, Ordering::Relaxed))
                 {
-                    println!("{}", worked(subject, setup, index, remake));
+                    println!("{}", worked(subject, setup, index, task));
                 }
             });
         }
     });
 }
 
+#[derive(Clone, Copy)]
+enum Task {
+    Reference,
+    Own,
+    Compare,
+}
+
 fn cell_name(subject: &Subject, index: usize) -> String {
     format!("{}-{index:02}", subject.name)
 }
 
-fn worked(subject: &Subject, setup: &Setup, index: usize, remake: bool) -> String {
+fn worked(subject: &Subject, setup: &Setup, index: usize, task: Task) -> String {
     let space = subject.study.space.as_ref().expect("space");
     let search = &subject.study.search;
     let mut place = Place {
@@ -441,9 +466,9 @@ fn worked(subject: &Subject, setup: &Setup, index: usize, remake: bool) -> Strin
         cell: cells(space)[index],
         area_m2: hypervolume_reference(&subject.study, setup, space).area_m2,
     };
-    if remake {
-        make_reference(&mut place)
-    } else {
-        compare(&place)
+    match task {
+        Task::Reference => make_reference(&mut place),
+        Task::Own => compare(&place, &[]),
+        Task::Compare => compare(&place, &BUDGETS),
     }
 }
