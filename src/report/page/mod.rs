@@ -3,7 +3,7 @@
 mod data;
 mod words;
 
-use crate::run::records::{DesignRecord, PeriodRecord};
+use crate::run::records::{DesignRecord, PeriodRecord, WidthSweep};
 use crate::run::summary::CellLine;
 use maud::{DOCTYPE, Markup, PreEscaped, html};
 use serde_json::Value;
@@ -19,11 +19,26 @@ pub struct PageInput<'a> {
     pub cells: &'a [CellLine],
     /// Recorded waveforms.
     pub periods: &'a [PeriodRecord],
+    /// Losses against width around one design.
+    pub sweep: Option<&'a WidthSweep>,
+    /// Sheets that are made already, by the design's id.
+    pub sheets: &'a [(String, Value)],
 }
 
 /// Only what stands in the page itself runs or shows; nothing is fetched.
 const POLICY: &str = "default-src 'none'; script-src 'unsafe-inline'; style-src 'unsafe-inline'; img-src data:; \
                       base-uri 'none'; form-action 'none'";
+
+/// One script: its parts share their names.
+const SCRIPT: &str = concat!(
+    include_str!("script/data.js"),
+    include_str!("script/front.js"),
+    include_str!("script/filters.js"),
+    include_str!("script/tables.js"),
+    include_str!("script/charts.js"),
+    include_str!("script/compare.js"),
+    include_str!("script/start.js"),
+);
 
 /// The page; all text from files is escaped.
 pub fn page(input: &PageInput<'_>) -> String {
@@ -37,19 +52,19 @@ pub fn page(input: &PageInput<'_>) -> String {
                 meta name="viewport" content="width=device-width, initial-scale=1";
                 meta name="color-scheme" content="light dark";
                 title { (title) " – widefront" }
-                style { (PreEscaped(include_str!("page.css"))) }
+                style { (PreEscaped(include_str!("style.css"))) }
             }
             body {
                 header {
                     h1 { (title) }
-                    button type="button" id="theme" { "Light or dark" }
+                    button type="button" id="theme" { "Dark colours" }
                 }
                 main { (contents(input)) }
                 footer class="faint" {
                     "Made by widefront " (words::text(input.run, "/version")) " from the run's records alone."
                 }
                 script type="application/json" id="data" { (PreEscaped(data::embedded(input))) }
-                script { (PreEscaped(include_str!("page.js"))) }
+                script { (PreEscaped(SCRIPT)) }
             }
         }
     }
@@ -57,13 +72,43 @@ pub fn page(input: &PageInput<'_>) -> String {
 }
 
 fn contents(input: &PageInput<'_>) -> Markup {
+    let some = !input.designs.is_empty();
     html! {
+        noscript { p { "The front and its tables need this page's own script; without it the words and " code { "front.csv" } " remain." } }
         section aria-labelledby="answer" {
-            h2 id="answer" { "The answer" }
+            h2 id="answer" { "Asked and answered" }
+            p { (words::question(input.run)) }
             ol class="answer" {
-                @for line in words::answer(input.designs) { li { (line) } }
+                @for line in words::answer(input.designs) {
+                    li {
+                        b { (line.what) } (line.figures)
+                        @if let Some(id) = line.id { " " button type="button" data-design=(id) { (id) } }
+                    }
+                }
             }
         }
+        div hidden[!some] { (explore(input)) }
+        section aria-labelledby="cells-title" {
+            h2 id="cells-title" { "Cells" }
+            p class="faint" { "Each cell's own front, before the overall one is taken." }
+            div class="scroll list" tabindex="0" role="region" aria-labelledby="cells-title" { table id="cells" {} }
+            p id="cells-listed" class="faint" {}
+        }
+        div class="pair" {
+            (listed("What was asked", &words::asked(input.run)))
+            (listed("How the search ended", &words::ended(input.run)))
+            (listed("Where it comes from", &words::provenance(input.run)))
+        }
+        div class="pair" {
+            (told("Assumptions", &words::assumptions(input.run)))
+            (told("Cautions", &words::CAUTIONS))
+        }
+    }
+}
+
+/// The parts that the script fills, in the order they are read.
+fn explore(input: &PageInput<'_>) -> Markup {
+    html! {
         section aria-labelledby="explore" {
             h2 id="explore" { "The front" }
             div class="controls" {
@@ -73,39 +118,47 @@ fn contents(input: &PageInput<'_>) -> Markup {
             }
             div class="two" {
                 figure {
-                    canvas id="front" tabindex="0" role="img"
-                        aria-label="Designs of the front; arrow keys move through them, Enter compares one" aria-describedby="told" {}
+                    canvas id="front" tabindex="0" role="img" aria-describedby="told"
+                        aria-label="Designs of the front; arrow keys move through them, Enter compares one" {}
                     figcaption id="told" aria-live="polite" {}
                 }
                 div {
-                    h3 { "Keep only" }
+                    h3 style="margin-top:0" { "Keep only" }
                     div id="brushes" {}
-                    button type="button" id="clear" { "Keep all" }
+                    div class="row" { select id="more" aria-label="Another figure to keep a range of" {} button type="button" id="add" { "Add" } }
+                    div class="row" { label { input type="checkbox" id="waves"; " Only with a waveform" } }
+                    div class="row" { button type="button" id="clear" { "Keep all" } span id="kept" class="faint" aria-live="polite" {} }
                 }
             }
-            h3 { "Best efficiency kept, %, by loaded Q (down) and supply (across)" }
-            div id="map" role="group" aria-label="Cells of loaded Q and supply; one pressed keeps its designs alone" {}
+            h3 id="map-title" { "Best efficiency kept, %, by loaded Q (down) and supply (across)" }
+            p class="faint" { "A place that is pressed keeps its designs alone. Dashed: no design of the front is kept there; the cell's own best." }
+            div id="map" role="group" aria-labelledby="map-title" {}
         }
         section aria-labelledby="comparison" {
-            h2 id="comparison" { "Comparison" }
-            p id="none" class="faint" { "Choose designs in the front or the table, six at most." }
-            div id="cards" class="cards" {}
+            h2 id="comparison" tabindex="-1" { "Comparison" }
+            p class="faint" { "Designs chosen in the front, the table or the answer, six at most. Records carry six digits here; " code { "front.json" } " holds all." }
+            p id="said" class="faint" aria-live="polite" {}
+            p id="none" { "No design is chosen." }
+            div id="compared" {
+                div id="cards" class="cards" {}
+                p { label { input type="checkbox" id="shares"; " Bars as shares of each design's own total" } }
+                div class="half" {
+                    div id="charts" {}
+                    div id="side" class="scroll" tabindex="0" role="region" aria-label="Figures of the designs compared" {}
+                }
+            }
         }
         section aria-labelledby="list" {
             h2 id="list" { "Designs" }
-            p id="count" class="faint" aria-live="polite" {}
-            div class="scroll" tabindex="0" role="region" aria-labelledby="list" {
-                table { thead { tr id="titles" {} } tbody id="rows" {} }
+            p id="count" class="faint" {}
+            div class="scroll list" tabindex="0" role="region" aria-labelledby="list" { table id="designs" {} }
+            p id="listed" class="faint" {}
+        }
+        @if let Some(sweep) = input.sweep {
+            section aria-labelledby="sweep-title" {
+                h2 id="sweep-title" { "Losses of " (sweep.id) " as its NMOS width alone changes" }
+                div id="sweep" {}
             }
-        }
-        div class="pair" {
-            (listed("What was asked", &words::asked(input.run)))
-            (listed("How the search ended", &words::ended(input.run)))
-            (listed("Where it comes from", &words::provenance(input.run)))
-        }
-        div class="pair" style="margin-top:16px" {
-            (told("Assumptions", &words::ASSUMPTIONS))
-            (told("Cautions", &words::CAUTIONS))
         }
     }
 }

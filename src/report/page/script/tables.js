@@ -1,0 +1,50 @@
+// Tables that sort by any column; what does not exist comes last either way.
+const MOST_ROWS = 200;
+/** `value(row, column)` to sort by and `fill(row, cells)` to change a line; `rows()` gives what is listed. */
+function sortable(table, columns, start, rows, value, line, more) {
+  const state = { name: start, up: false }, lines = new Map();
+  const titles = columns.map(f => {
+    const title = element("th", { scope: "col" }, button(head(f), () => {
+      state.up = state.name === f.name ? !state.up : Boolean(f.rising);
+      state.name = f.name;
+      fill();
+    }));
+    title.dataset.figure = f.name;
+    return title;
+  });
+  const body = element("tbody");
+  table.append(element("thead", {}, element("tr", {}, ...titles)), body);
+  function fill() {
+    const by = columns.find(f => f.name === state.name), sign = state.up ? 1 : -1;
+    const sorted = rows().map(r => [value(r, by), r]).sort(([a], [b]) =>
+      a === null || b === null ? (a === null) - (b === null) : a < b ? -sign : a > b ? sign : 0);
+    for (const t of titles) t.setAttribute("aria-sort", t.dataset.figure !== state.name ? "none" : state.up ? "ascending" : "descending");
+    lines.clear();
+    body.replaceChildren(...sorted.slice(0, MOST_ROWS).map(([, r]) => { const l = line(r); lines.set(r, l); return l; }));
+    more.textContent = sorted.length > MOST_ROWS ? "The first " + MOST_ROWS + " of " + sorted.length + " in this order are listed." : "";
+  }
+  return { fill, lines };
+}
+
+const listed = figures.slice(0, 16).concat(figures.filter(f => ["third_harmonic_dbc", "residual"].includes(f.name)));
+const designs = sortable(get("designs"), [{ name: "id", words: "Design", unit: "", rising: true }, ...listed.map(f => ({ ...f, rising: f.name === "area_m2" }))], "efficiency",
+  () => kept, (i, f) => f.name === "id" ? id(i) : number(i, f.name),
+  i => {
+    const choice = button(id(i), () => compare(i)), line = element("tr", {}, element("td", {}, choice));
+    line.append(...listed.map(f => element("td", { textContent: bare(f, number(i, f.name)) })));
+    markLine(line, i);
+    return line;
+  }, get("listed"));
+function markLine(line, i) {
+  const is = picked.includes(i);
+  line.className = is ? "picked" : "";
+  line.querySelector("button").setAttribute("aria-pressed", is);
+}
+
+const cellColumns = [
+  ["cell", "Cell", "", 1, true], ["loaded_q", "Loaded Q", "", 1, true], ["supply_v", "Supply", "V", 1, true], ["best_efficiency", "Best efficiency", "%", 100],
+  ["least_output_power_dbm", "Least output power", "dBm", 1], ["most_output_power_dbm", "Most output power", "dBm", 1],
+  ["least_area_m2", "Least area", "mm²", 1e6, true], ["front_size", "Designs", "", 1], ["hypervolume", "Hypervolume", "", 1], ["evaluations", "Evaluations", "", 1],
+].map(([name, words, unit, factor, rising]) => ({ name, words, unit, factor, rising }));
+const cellTable = sortable(get("cells"), cellColumns, "best_efficiency", () => data.cells, (c, f) => c[f.name],
+  c => element("tr", {}, ...cellColumns.map(f => element("td", { textContent: f.factor === 1 && Number.isInteger(c[f.name]) ? c[f.name] : bare(f, c[f.name]) }))), get("cells-listed"));
