@@ -39,12 +39,20 @@ pub struct CellLine {
     front_size: usize,
     hypervolume: f64,
     evaluations: u64,
-    technology: Option<String>,
-    device: Option<String>,
-    stack: Option<u32>,
-    legs: Option<u32>,
-    frequency_hz: Option<f64>,
-    temperature_k: Option<f64>,
+    /// Largest residual of its front; none without a design, or in a run made before it was written.
+    worst_residual: Option<f64>,
+    /// Technology of its variant, where the study lists several; so with what follows.
+    pub technology: Option<String>,
+    /// Transistor pair.
+    pub device: Option<String>,
+    /// Devices a side.
+    pub stack: Option<u32>,
+    /// Legs.
+    pub legs: Option<u32>,
+    /// Carrier, Hz.
+    pub frequency_hz: Option<f64>,
+    /// Junction, K.
+    pub temperature_k: Option<f64>,
 }
 
 /// Reads `cells.csv`.
@@ -318,6 +326,7 @@ fn line(record: &CellRecord) -> CellLine {
         front_size: record.designs.len(),
         hypervolume: record.hypervolume,
         evaluations: record.evaluations,
+        worst_residual: record.designs.iter().map(|d| d.residual).reduce(f64::max),
         technology: record.variant.as_ref().map(|v| v.technology.clone()),
         device: record.variant.as_ref().map(|v| v.device.clone()),
         stack: record.variant.as_ref().map(|v| v.stack),

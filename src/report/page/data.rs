@@ -1,6 +1,7 @@
-//! A run's records as the page's script reads them: columns once, a row a design, six significant digits.
+//! A run's records as the page's script reads them: a column a figure, whole; curves to six significant digits.
 
 use super::PageInput;
+use super::variants::Variants;
 use crate::run::records::{DesignRecord, WidthSweep};
 use serde_json::{Map, Number, Value, json};
 
@@ -11,14 +12,15 @@ pub fn embedded(input: &PageInput<'_>) -> String {
     for name in flat.iter().flat_map(Map::keys) {
         columns.entry(name).or_insert(Value::Null);
     }
-    let columns: Vec<&String> = columns.keys().collect();
-    let rows: Vec<Vec<Value>> = flat
-        .iter()
-        .map(|design| {
-            let value = |c: &&String| design.get(*c).cloned().unwrap_or(Value::Null);
-            columns.iter().map(value).collect()
-        })
-        .collect();
+    for (name, column) in &mut columns {
+        let value = |design: &Map<String, Value>| design.get(name).cloned().unwrap_or(Value::Null);
+        let values: Vec<Value> = flat.iter().map(value).collect();
+        // What all designs share stands once.
+        *column = match values.split_first() {
+            Some((first, rest)) if rest.iter().all(|v| v == first) => json!({ "all": first }),
+            _ => Value::Array(values),
+        };
+    }
     let waveforms: Map<String, Value> = input
         .periods
         .iter()
@@ -32,7 +34,8 @@ pub fn embedded(input: &PageInput<'_>) -> String {
         .collect();
     let sheets: Map<String, Value> = input.sheets.iter().cloned().collect();
     let data = json!({
-        "columns": columns, "rows": rows, "cells": input.cells, "waveforms": waveforms,
+        "count": input.designs.len(), "columns": columns, "cells": input.cells,
+        "variants": Variants::of(input.cells).embedded(), "waveforms": waveforms,
         "sweep": input.sweep.and_then(sweep), "sheets": sheets,
     });
     data.to_string()
@@ -77,9 +80,6 @@ fn flatten(prefix: &str, fields: Map<String, Value>, flat: &mut Map<String, Valu
         let name = format!("{prefix}{key}");
         match value {
             Value::Object(inner) => flatten(&format!("{name}."), inner, flat),
-            Value::Number(n) if !(n.is_i64() || n.is_u64()) => {
-                flat.insert(name, n.as_f64().map_or(Value::Null, rounded));
-            }
             other => {
                 flat.insert(name, other);
             }

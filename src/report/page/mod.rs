@@ -1,12 +1,15 @@
 //! The report: one HTML file that needs no network, made from a run's records alone.
 
+mod asked;
 mod data;
+mod variants;
 mod words;
 
 use crate::run::records::{DesignRecord, PeriodRecord, WidthSweep};
 use crate::run::summary::CellLine;
 use maud::{DOCTYPE, Markup, PreEscaped, html};
 use serde_json::Value;
+use variants::Variants;
 
 /// The records that a page shows.
 #[derive(Debug, Clone, Copy)]
@@ -71,38 +74,74 @@ pub fn page(input: &PageInput<'_>) -> String {
     .into_string()
 }
 
+/// Where the page's links go, in the order of its sections.
+const PLACES: [(&str, &str); 8] = [
+    ("answer", "Asked and answered"),
+    ("explore", "Front"),
+    ("comparison", "Comparison"),
+    ("list", "Designs"),
+    ("cells-title", "Cells"),
+    ("ended", "How the search ended"),
+    ("assumptions", "Assumptions"),
+    ("cautions", "Cautions"),
+];
+
 fn contents(input: &PageInput<'_>) -> Markup {
     let some = !input.designs.is_empty();
+    let variants = Variants::of(input.cells);
     html! {
+        nav aria-label="Sections" {
+            @for (id, words) in PLACES {
+                @if some || !["explore", "comparison", "list"].contains(&id) { a href={ "#" (id) } { (words) } " " }
+            }
+        }
         noscript { p { "The front and its tables need this page's own script; without it the words and " code { "front.csv" } " remain." } }
         section aria-labelledby="answer" {
             h2 id="answer" { "Asked and answered" }
-            p { (words::question(input.run)) }
+            p { (asked::question(input.run)) }
             ol class="answer" {
-                @for line in words::answer(input.designs) {
+                @for line in words::answer(input.designs, &variants) {
                     li {
                         b { (line.what) } (line.figures)
                         @if let Some(id) = line.id { " " button type="button" data-design=(id) { (id) } }
                     }
                 }
             }
+            div class="asked" {
+                @for (title, rows) in asked::asked(input.run) { div { h3 { (title) } (definitions(&rows)) } }
+            }
         }
         div hidden[!some] { (explore(input)) }
+        @if !variants.is_empty() {
+            section aria-labelledby="variants-title" {
+                h2 id="variants-title" { "Variants" }
+                p class="faint" { "Best of each variant's own cells, and how many of its designs are on the overall front." }
+                div class="scroll list" tabindex="0" role="region" aria-labelledby="variants-title" { table id="variants" {} }
+                p id="variants-listed" class="faint" {}
+            }
+        }
         section aria-labelledby="cells-title" {
             h2 id="cells-title" { "Cells" }
-            p class="faint" { "Each cell's own front, before the overall one is taken." }
+            p class="faint" { "Each cell's own front, before the overall one is taken. Hypervolume in efficiency × W × mm²." }
             div class="scroll list" tabindex="0" role="region" aria-labelledby="cells-title" { table id="cells" {} }
             p id="cells-listed" class="faint" {}
         }
         div class="pair" {
-            (listed("What was asked", &words::asked(input.run)))
-            (listed("How the search ended", &words::ended(input.run)))
-            (listed("Where it comes from", &words::provenance(input.run)))
+            section aria-labelledby="ended" {
+                h2 id="ended" { "How the search ended" }
+                (definitions(&words::ended(input.run, input.designs)))
+                div id="residuals" {}
+            }
+            section aria-labelledby="provenance" {
+                h2 id="provenance" { "Where it comes from" }
+                (definitions(&words::provenance(input.run)))
+            }
         }
         div class="pair" {
-            (told("Assumptions", &words::assumptions(input.run)))
-            (told("Cautions", &words::CAUTIONS))
+            (told("assumptions", "Assumptions", &words::assumptions(input.run)))
+            (told("cautions", "Cautions", &words::CAUTIONS))
         }
+        p id="said" role="status" {}
     }
 }
 
@@ -120,24 +159,26 @@ fn explore(input: &PageInput<'_>) -> Markup {
                 figure {
                     canvas id="front" tabindex="0" role="img" aria-describedby="told"
                         aria-label="Designs of the front; arrow keys move through them, Enter compares one" {}
+                    div id="legend" class="key" {}
                     figcaption id="told" aria-live="polite" {}
                 }
                 div {
                     h3 style="margin-top:0" { "Keep only" }
+                    div id="choices" {}
                     div id="brushes" {}
                     div class="row" { select id="more" aria-label="Another figure to keep a range of" {} button type="button" id="add" { "Add" } }
                     div class="row" { label { input type="checkbox" id="waves"; " Only with a waveform" } }
+                    div class="row" { label { input type="checkbox" id="certified"; " Only certified optimal" } }
                     div class="row" { button type="button" id="clear" { "Keep all" } span id="kept" class="faint" aria-live="polite" {} }
                 }
             }
             h3 id="map-title" { "Best efficiency kept, %, by loaded Q (down) and supply (across)" }
-            p class="faint" { "A place that is pressed keeps its designs alone. Dashed: no design of the front is kept there; the cell's own best." }
+            p class="faint" { "Press a place to keep its designs alone. Dashed: no design of the front is kept there; shown is the cell's own best." }
             div id="map" role="group" aria-labelledby="map-title" {}
         }
         section aria-labelledby="comparison" {
             h2 id="comparison" tabindex="-1" { "Comparison" }
-            p class="faint" { "Designs chosen in the front, the table or the answer, six at most. Records carry six digits here; " code { "front.json" } " holds all." }
-            p id="said" class="faint" aria-live="polite" {}
+            p class="faint" { "Designs chosen in the front, the table or the answer, six at most. Save record gives a design whole, as " code { "front.json" } " holds it." }
             p id="none" { "No design is chosen." }
             div id="compared" {
                 div id="cards" class="cards" {}
@@ -163,19 +204,14 @@ fn explore(input: &PageInput<'_>) -> Markup {
     }
 }
 
-fn listed(title: &str, rows: &[(&str, String)]) -> Markup {
-    html! {
-        section {
-            h2 { (title) }
-            dl { @for (name, value) in rows { dt { (name) } dd { (value) } } }
-        }
-    }
+fn definitions(rows: &[(&str, String)]) -> Markup {
+    html! { dl { @for (name, value) in rows { dt { (name) } dd { (value) } } } }
 }
 
-fn told(title: &str, lines: &[&str]) -> Markup {
+fn told(id: &str, title: &str, lines: &[&str]) -> Markup {
     html! {
-        section {
-            h2 { (title) }
+        section aria-labelledby=(id) {
+            h2 id=(id) { (title) }
             ul { @for line in lines { li { (line) } } }
         }
     }

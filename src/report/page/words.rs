@@ -1,5 +1,6 @@
 //! What the report says in words.
 
+use super::variants::Variants;
 use crate::quantity::{civil_date, format, format_in};
 use crate::run::records::DesignRecord;
 use crate::run::summary::headlines;
@@ -16,8 +17,18 @@ pub const CAUTIONS: [&str; 5] = [
 
 /// What the figures rest on, for this run.
 pub fn assumptions(run: &Value) -> Vec<&'static str> {
-    let stage = |key: &str| run.pointer(&format!("/study/stage/{key}"));
-    let coil = if run.pointer("/technology/inductor/model") == Some(&Value::from("spiral")) {
+    let has = |list: &str, single: &str| {
+        let listed = run.pointer(&format!("/study/sweep/{list}"));
+        let listed = listed.and_then(Value::as_array);
+        listed.is_some_and(|l| l.contains(&Value::from(2)))
+            || run.pointer(single) == Some(&Value::from(2))
+    };
+    let coils = [run.pointer("/technology"), run.pointer("/technologies")];
+    let has_spiral = coils
+        .into_iter()
+        .flatten()
+        .any(|part| part.to_string().contains("\"model\":\"spiral\""));
+    let coil = if has_spiral {
         "Spirals are solved as concentric circles with skin and proximity effect, within 1 % of a finer mesh; their resistance \
          at the carrier is used at the harmonics too."
     } else {
@@ -33,13 +44,13 @@ pub fn assumptions(run: &Value) -> Vec<&'static str> {
         "Body diodes do not conduct: a drain that would leave their clamps in a dead time breaks a limit.",
         coil,
     ];
-    if stage("stack").and_then(Value::as_u64) == Some(2) {
+    if has("stacks", "/study/stage/stack") {
         lines.push(
             "Cascodes stand at an ideal bias of half the supply; the charge of the nodes between is a lower estimate.",
         );
     }
-    if stage("legs").and_then(Value::as_u64) == Some(2) {
-        lines.push("Both legs are equal and switch half a period apart: even harmonics vanish.");
+    if has("legs", "/study/stage/legs") {
+        lines.push("Two legs are equal and switch half a period apart: even harmonics vanish.");
     }
     lines.push(
         "No bond wires, package, supply impedance, mismatch, ageing, heating or modulation; no parasitics of wires beyond the \
@@ -60,12 +71,20 @@ pub fn text(run: &Value, pointer: &str) -> String {
     }
 }
 
-fn number(run: &Value, pointer: &str) -> Option<f64> {
+/// A number of a record.
+pub fn number(run: &Value, pointer: &str) -> Option<f64> {
     run.pointer(pointer).and_then(Value::as_f64)
 }
 
-fn quantity(run: &Value, pointer: &str, unit: &str) -> String {
-    number(run, pointer).map_or(String::new(), |v| plain(&format(v, unit)))
+/// Units as they are printed, not as they are typed.
+pub fn plain(text: &str) -> String {
+    text.replace("mm^2", "mm²")
+        .replace(" um", " µm")
+        .replace("degC", "°C")
+        .replace(" ohm", " Ω")
+        .replace(" mohm", " mΩ")
+        .replace(" kohm", " kΩ")
+        .replace(" -", " −")
 }
 
 /// A line of the answer.
@@ -80,7 +99,7 @@ pub struct Line<'a> {
 }
 
 /// Three lines: the most efficient design, the strongest, the smallest.
-pub fn answer(designs: &[DesignRecord]) -> Vec<Line<'_>> {
+pub fn answer<'a>(designs: &'a [DesignRecord], variants: &Variants) -> Vec<Line<'a>> {
     let lines: Vec<Line<'_>> = ["Most efficient", "Most output power", "Smallest"]
         .into_iter()
         .zip(headlines(designs))
@@ -88,14 +107,21 @@ pub fn answer(designs: &[DesignRecord]) -> Vec<Line<'_>> {
             let design = design?;
             let f = design.evaluation.figures.as_ref()?;
             let sizing = &design.evaluation.design;
+            let variant = variants.words(design.cell);
             let figures = plain(&format!(
-                ": {:.1} % at {:.1} dBm on {}, with {} supply, loaded Q {:.2}, NMOS {}",
+                ": {:.1} % at {:.1} dBm on {}, with {} supply, loaded Q {:.2}, NMOS {}{}{}",
                 100.0 * f.efficiency,
                 f.output_power_dbm,
                 format_in(f.area_m2, "mm^2"),
                 format(sizing.supply_v, "V"),
                 sizing.loaded_q,
-                format(sizing.nmos_width_m, "m"),
+                micrometres_short(sizing.nmos_width_m),
+                variant.map_or(String::new(), |words| format!("; {words}")),
+                if design.certified {
+                    ""
+                } else {
+                    "; not certified optimal"
+                },
             ));
             Some(Line {
                 what,
@@ -115,180 +141,18 @@ pub fn answer(designs: &[DesignRecord]) -> Vec<Line<'_>> {
     }
 }
 
-type Rows = Vec<(&'static str, String)>;
-
-/// What was asked, in a sentence or two.
-pub fn question(run: &Value) -> String {
-    let objectives: Vec<&str> = run
-        .pointer("/objectives")
-        .and_then(Value::as_array)
-        .into_iter()
-        .flatten()
-        .filter_map(Value::as_str)
-        .map(|name| match name {
-            "efficiency" => "most efficiency",
-            "output_power" => "most output power",
-            "area" => "least area",
-            other => other,
-        })
-        .collect();
-    let limits = limits(run.pointer("/study/limits"));
-    let within = if limits.is_empty() {
-        String::new()
-    } else {
-        format!(" Limits: {limits}.")
-    };
-    format!(
-        "Which designs give {} at {} into {}, the {} network and the pair {} of {} given, in {} cells of loaded Q and supply?{within}",
-        objectives.join(", "),
-        quantity(run, "/study/frequency_hz", "Hz"),
-        quantity(run, "/study/antenna_resistance_ohm", "ohm"),
-        text(run, "/study/stage/network"),
-        text(run, "/study/stage/device"),
-        text(run, "/technology/name"),
-        text(run, "/cells"),
-    )
+/// Four digits are plenty in a sentence.
+fn micrometres_short(width_m: f64) -> String {
+    let short: f64 = format!("{width_m:.3e}").parse().unwrap_or(width_m);
+    format_in(short, "um")
 }
 
-/// The study in short; what it does not have is left out.
-pub fn asked(run: &Value) -> Rows {
-    let range = |key: &str, unit: &str| span(run.pointer(&format!("/study/space/{key}")), unit);
-    let stage = |key: &str| text(run, &format!("/study/stage/{key}"));
-    let driver = |key: &str| text(run, &format!("/study/driver/{key}"));
-    let rows = vec![
-        ("Carrier", quantity(run, "/study/frequency_hz", "Hz")),
-        (
-            "Antenna",
-            quantity(run, "/study/antenna_resistance_ohm", "ohm"),
-        ),
-        ("Loss behind the port", decibels(run)),
-        (
-            "Junction",
-            number(run, "/study/temperature_k")
-                .map_or(String::new(), |t| plain(&format_in(t, "degC"))),
-        ),
-        ("Legs", stage("legs")),
-        ("Devices a switch", stage("stack")),
-        ("Transistor pair", stage("device")),
-        ("Network", stage("network")),
-        (
-            "Driven by",
-            quantity(run, "/study/driver/input_capacitance_f", "F"),
-        ),
-        ("Drivers' PMOS/NMOS", driver("ratio")),
-        ("Drivers' overlap", driver("crowbar")),
-        ("Drivers' swing", swing(run.pointer("/study/driver/swing"))),
-        ("Supply", range("supply_v", "V")),
-        ("Loaded Q", range("loaded_q", "")),
-        ("NMOS width", range("nmos_width_m", "m")),
-        ("PMOS/NMOS", range("width_ratio", "")),
-        ("Turns", range("turns", "")),
-        ("Trace", range("trace_m", "m")),
-        ("Diameter", range("diameter_m", "m")),
-        ("Optimum resistance", range("resistance_ohm", "ohm")),
-        ("Load angle x", range("reactance", "")),
-        ("Dead time, of a period", range("dead_time", "")),
-        ("Driver stages", range("stages", "")),
-        ("Limits", limits(run.pointer("/study/limits"))),
-    ];
-    rows.into_iter().filter(|(_, v)| !v.is_empty()).collect()
-}
-
-fn decibels(run: &Value) -> String {
-    number(run, "/study/antenna_loss_db").map_or(String::new(), |db| format!("{db} dB"))
-}
-
-fn swing(swing: Option<&Value>) -> String {
-    let mut numbers = Vec::new();
-    collect(swing.unwrap_or(&Value::Null), &mut numbers);
-    match (numbers.first(), swing) {
-        (Some(&v), _) => format(v, "V"),
-        (None, Some(Value::String(name))) => format!("the {name}"),
-        _ => String::new(),
-    }
-}
-
-/// A range of the space as the record holds it.
-fn span(range: Option<&Value>, unit: &str) -> String {
-    let mut numbers = Vec::new();
-    collect(range.unwrap_or(&Value::Null), &mut numbers);
-    let shown = |v: f64| {
-        if unit.is_empty() {
-            format!("{v}")
-        } else {
-            plain(&format(v, unit))
-        }
-    };
-    let is_grid = range.is_some_and(|r| r.get("grid").is_some());
-    match (numbers.first(), numbers.last()) {
-        (Some(&low), Some(&high)) if low != high && is_grid => {
-            format!(
-                "{} to {}, {} values",
-                shown(low),
-                shown(high),
-                numbers.len()
-            )
-        }
-        (Some(&low), Some(&high)) if low != high => {
-            format!("{} to {}, free", shown(low), shown(high))
-        }
-        (Some(&only), _) => shown(only),
-        _ => String::new(),
-    }
-}
-
-fn collect(value: &Value, numbers: &mut Vec<f64>) {
-    match value {
-        Value::Number(n) => numbers.extend(n.as_f64()),
-        Value::Array(list) => list.iter().for_each(|v| collect(v, numbers)),
-        Value::Object(fields) => fields.values().for_each(|v| collect(v, numbers)),
-        _ => {}
-    }
-}
-
-/// Limits in words; those that the study leaves open are left out.
-fn limits(limits: Option<&Value>) -> String {
-    let Some(Value::Object(fields)) = limits else {
-        return String::new();
-    };
-    let mut parts = Vec::new();
-    for (name, value) in fields {
-        let bounds = match value {
-            Value::Object(bounds) => bounds.iter().map(|(b, v)| (b.as_str(), v)).collect(),
-            bound => vec![("at_most", bound)],
-        };
-        for (bound, value) in bounds {
-            let Some(value) = value.as_f64() else {
-                continue;
-            };
-            let (words, shown) = match name.as_str() {
-                "output_power_w" => ("output power", format_in(value, "dBm")),
-                "area_m2" => ("area", format_in(value, "mm^2")),
-                "second_harmonic_dbc" => ("second harmonic", format!("{value} dBc")),
-                "third_harmonic_dbc" => ("third harmonic", format!("{value} dBc")),
-                "edge_time" => ("edge time", format!("{value} of a period")),
-                other => (other, value.to_string()),
-            };
-            let words = words.replace('_', " ");
-            parts.push(format!("{words} {} {shown}", bound.replace('_', " ")));
-        }
-    }
-    plain(&parts.join("; "))
-}
-
-/// Units as they are printed, not as they are typed.
-fn plain(text: &str) -> String {
-    text.replace("mm^2", "mm²")
-        .replace(" um", " µm")
-        .replace("degC", "°C")
-        .replace(" ohm", " Ω")
-        .replace(" mohm", " mΩ")
-        .replace(" kohm", " kΩ")
-        .replace(" -", " −")
-}
+/// Names and values.
+pub type Rows = Vec<(&'static str, String)>;
 
 /// How the search ended.
-pub fn ended(run: &Value) -> Rows {
+pub fn ended(run: &Value, designs: &[DesignRecord]) -> Rows {
+    let uncertified = designs.iter().filter(|d| !d.certified).count();
     let residual = |name: &str| {
         number(run, &format!("/residuals/{name}")).map_or(String::new(), |r| format!("{r:.1e}"))
     };
@@ -322,13 +186,21 @@ pub fn ended(run: &Value) -> Rows {
             "Certified optimal",
             number(run, "/residuals/points").map_or(String::new(), |points| {
                 format!(
-                    "{} of {points} points of all cells, residual at most 1e-4",
+                    "{} of {points} points of all cells (residual at most 1e-4)",
                     text(run, "/residuals/certified"),
                 )
             }),
         ),
+        (
+            "Not certified on the front",
+            match uncertified {
+                0 if designs.is_empty() => String::new(),
+                0 => "none".into(),
+                n => format!("{n}, marked ×"),
+            },
+        ),
         ("Residual, median", residual("median")),
-        ("Residual, 99 of 100 under", residual("percentile_99")),
+        ("Residual, 99 of 100 below", residual("percentile_99")),
         ("Residual, worst", residual("worst")),
     ];
     rows.into_iter().filter(|(_, v)| !v.is_empty()).collect()
@@ -382,31 +254,5 @@ mod tests {
     fn law_moments_are_dates_and_times_of_day() {
         assert_eq!(moment(0.0), "1970-01-01 00:00:00 UTC");
         assert_eq!(moment(1_796_127_533.0), "2026-12-01 12:18:53 UTC");
-    }
-
-    #[test]
-    fn law_what_a_study_lacks_is_left_out() {
-        let study = json!({"space": {"turns": null, "supply_v": {"grid": [1.0, 1.2]}, "loaded_q": {"fixed": 3.0}}});
-        let rows = asked(&json!({"study": study}));
-        assert!(rows.contains(&("Supply", "1 V to 1.2 V, 2 values".into())));
-        assert!(rows.contains(&("Loaded Q", "3".into())));
-        assert_eq!(rows.len(), 2, "{rows:?}");
-        assert!(
-            ended(&Value::Null)
-                .iter()
-                .all(|(name, _)| *name != "Certified optimal")
-        );
-    }
-
-    #[test]
-    fn law_limits_are_said_in_the_units_of_the_trade() {
-        let asked = json!({
-            "third_harmonic_dbc": -30.0, "second_harmonic_dbc": null,
-            "output_power_w": {"at_least": 0.1, "at_most": null}, "area_m2": {"at_least": null, "at_most": 6e-7},
-        });
-        assert_eq!(
-            limits(Some(&asked)),
-            "third harmonic at most −30 dBc; output power at least 20 dBm; area at most 0.6 mm²"
-        );
     }
 }

@@ -1,10 +1,9 @@
 // Pictures made of lines and areas, drawn at the width they have: letters keep their size on any screen.
 const partColours = ["#3d6ea8", "#c77a33", "#4a9d86", "#8d6cab", "#bba239", "#7b8089", "#a3485c", "#6bb0d6", "#5a6b3a", "#d7a0a6", "#2b7f8f", "#74543f"];
-const lossNames = data.columns.filter(n => n.startsWith("losses_w."));
-const partNames = { losses: ["output_power_w", ...lossNames], area: data.columns.filter(n => n.startsWith("area_parts_m2.")) };
+const names = [...column.keys()], lossNames = names.filter(n => n.startsWith("losses_w."));
+const partNames = { losses: ["output_power_w", ...lossNames], area: names.filter(n => n.startsWith("area_parts_m2.")) };
 const partWords = name => name === "output_power_w" ? "output" : name.split(".")[1].replaceAll("_", " ");
 const partColour = name => partColours[Math.max(partNames.losses.indexOf(name), partNames.area.indexOf(name)) % partColours.length];
-const swatch = style => { const s = element("i"); s.setAttribute("style", style); return s; };
 const key = names => element("div", { className: "key" }, ...names.map(n => element("span", {}, swatch("background:" + partColour(n)), partWords(n))));
 const picture = (wide, high, words) => drawing("svg", { width: wide, height: high, viewBox: "0 0 " + wide + " " + high, role: "img", "aria-label": words });
 const letters = (x, y, text, anchor = "start") => drawing("text", { x, y, "text-anchor": anchor }, text);
@@ -12,15 +11,18 @@ const letters = (x, y, text, anchor = "start") => drawing("text", { x, y, "text-
 /** A bar a design, on one scale or each its whole width; what is negative (a drain's charge near soft switching) has none. */
 function bars(wide, chosen, names, unit, factor, what, shares) {
   const values = chosen.map(i => names.map(n => Math.max(number(i, n) ?? 0, 0))), totals = values.map(v => v.reduce((a, b) => a + b, 0));
-  const most = k => shares ? totals[k] : Math.max(...totals), row = 46, sum = k => shown({ unit, factor }, totals[k]);
+  const whole = chosen.map(i => names.reduce((all, n) => all + (number(i, n) ?? 0), 0));
+  const most = k => shares ? totals[k] : Math.max(...totals), row = 46, sum = k => shown({ unit, factor }, whole[k]);
   const svg = picture(wide, row * chosen.length, what + ": " + chosen.map((i, k) => id(i) + " " + sum(k) + ", of it " +
-    names.map((n, p) => partWords(n) + " " + (100 * values[k][p] / totals[k]).toFixed(1) + " %").join(", ")).join("; "));
+    names.map((n, p) => partWords(n) + " " + (100 * values[k][p] / whole[k]).toFixed(1) + " %").join(", ")).join("; "));
   chosen.forEach((i, k) => {
     let x = 0;
     svg.append(letters(0, row * k + 14, id(i)), letters(wide, row * k + 14, sum(k), "end"));
     names.forEach((n, p) => {
       const width = wide * values[k][p] / most(k);
-      if (width > 0.3) svg.append(drawing("rect", { x, y: row * k + 20, width, height: 20, fill: partColour(n) }, drawing("title", {}, partWords(n) + " " + shown({ unit, factor }, values[k][p]) + ", " + (100 * values[k][p] / totals[k]).toFixed(1) + " %")));
+      const part = (100 * values[k][p] / whole[k]).toFixed(1) + " %";
+      if (width > 0.3) svg.append(drawing("rect", { x, y: row * k + 20, width, height: 20, fill: partColour(n) }, drawing("title", {}, partWords(n) + " " + shown({ unit, factor }, values[k][p]) + ", " + part)));
+      if (width > 46) svg.append(drawing("text", { x: x + width / 2, y: row * k + 34, "text-anchor": "middle", class: "on" }, part));
       x += width;
     });
   });
@@ -80,3 +82,22 @@ function sweepPicture(wide) {
   const used = order.filter(k => mw(Math.max(...losses[k])) > most / 2000).map(k => lossNames[k]);
   return [svg, key(used), element("p", { className: "faint", textContent: "The line: " + words + "." + (feasible.every(Boolean) ? "" : " Under the veil a limit is broken.") })];
 }
+
+/** How many designs of the front have a residual in each decade; those past the bound are not certified. */
+function residualPicture(wide) {
+  const BOUND = -4, found = ids.map((_, i) => number(i, "residual")).filter(v => v !== null);
+  if (!found.length) return [];
+  const decade = v => v > 0 ? Math.min(Math.max(Math.floor(Math.log10(v)), -10), 2) : -10, counts = new Map();
+  for (const v of found) counts.set(decade(v), (counts.get(decade(v)) ?? 0) + 1);
+  const from = Math.min(...counts.keys(), BOUND - 2), to = Math.max(...counts.keys(), BOUND) + 1, high = 190, most = Math.max(...counts.values());
+  const at = { left: 46, right: wide - 8, top: 26, bottom: high - 38 };
+  at.px = d => at.left + (d - from) / (to - from) * (at.right - at.left);
+  at.py = n => at.bottom - n / (most * 1.12) * (at.bottom - at.top);
+  const svg = picture(wide, high, "Residuals of the front's designs by decade: " + [...counts].sort(([a], [b]) => a - b).map(([d, n]) => n + " from 1e" + d).join(", "));
+  const across = Array.from({ length: to - from + 1 }, (_, k) => [from + k, "1e" + minus(from + k)]);
+  axes(svg, at, across.filter((_, k) => across.length < 9 || k % 2 === 0), ticks(0, most, 4).filter(Number.isInteger).map(v => [v, String(v)]), ["Residual", "Designs of the front"]);
+  for (const [d, n] of counts) svg.append(drawing("rect", { x: at.px(d) + 1, y: at.py(n), width: at.px(d + 1) - at.px(d) - 2, height: at.bottom - at.py(n), class: d < BOUND ? "sure" : "unsure" }), letters(at.px(d + 0.5), at.py(n) - 4, String(n), "middle"));
+  svg.append(drawing("line", { x1: at.px(BOUND), x2: at.px(BOUND), y1: at.top - 6, y2: at.bottom, class: "best" }), letters(at.px(BOUND) - 5, at.top + 2, "certified", "end"));
+  return [svg];
+}
+function showResiduals() { get("residuals").replaceChildren(...residualPicture(Math.floor(get("residuals").clientWidth))); }

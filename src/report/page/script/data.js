@@ -1,12 +1,23 @@
 "use strict";
 // What the records hold, and small helpers. All text goes in by textContent.
 const data = JSON.parse(document.getElementById("data").textContent);
-const count = data.rows.length;
-const column = new Map(data.columns.map((name, k) => [name, data.rows.map(row => row[k])]));
+const count = data.count;
+// A column that all designs share is recorded once.
+const column = new Map(Object.entries(data.columns).map(([name, values]) => [name, Array.isArray(values) ? values : Array(count).fill(values.all)]));
 /** A number of design `i`, or null: what does not exist stays empty. */
 const number = (i, name) => { const v = column.get(name)?.[i]; return typeof v === "number" ? v : null; };
 const ids = column.get("id") ?? [], id = i => ids[i];
 const byId = new Map(ids.map((name, i) => [name, i]));
+const isCertified = i => column.get("certified")[i] !== false;
+
+// Variants of a sweep: each cell is of one. What differs among them gets a column of level numbers.
+const variants = data.variants.list, variantOfCell = new Map(variants.flatMap((v, k) => v.cells.map(cell => [cell, k])));
+const variantOf = i => variantOfCell.get(number(i, "cell")) ?? null;
+const levelled = data.variants.keys.map(({ name, words }, k) => ({ name: "level." + name, words, levels: [...new Set(variants.map(v => v.parts[k]))], part: v => v.parts[k] }));
+if (levelled.length > 1) levelled.unshift({ name: "level.variant", words: "Variant", levels: variants.map(v => v.words), part: v => v.words });
+for (const { name, levels, part } of levelled) column.set(name, ids.map((_, i) => variantOf(i) === null ? null : levels.indexOf(part(variants[variantOf(i)]))));
+/** The variant of a design in words; empty in a run of one. */
+const variantWords = i => variantOf(i) === null ? "" : variants[variantOf(i)].words;
 
 // Name in the records, words, unit, factor from SI to it.
 const figures = [
@@ -25,14 +36,15 @@ const figures = [
   ["lowest_drain_v", "Lowest drain voltage", "V", 1], ["network_current_rms_a", "Loop current, RMS", "mA", 1e3],
   ["on_resistance_n_ohm", "On-resistance, N", "Ω", 1], ["on_resistance_p_ohm", "On-resistance, P", "Ω", 1],
   ["overdrive_use_n", "Overdrive use, N", "", 1], ["overdrive_use_p", "Overdrive use, P", "", 1], ["residual", "Residual", "", 1],
-].map(([name, words, unit, factor]) => {
+  ...levelled.map(l => [l.name, l.words, "", 1, l.levels]),
+].map(([name, words, unit, factor, levels]) => {
   let low = Infinity, high = -Infinity;
   for (let i = 0; i < count; i++) { const v = number(i, name); if (v !== null) { low = Math.min(low, v); high = Math.max(high, v); } }
-  return { name, words, unit, factor, low, high };
+  return { name, words, unit, factor, low, high, levels };
 }).filter(f => f.low <= f.high);
 const figure = new Map(figures.map(f => [f.name, f]));
 const head = f => f.words + (f.unit ? ", " + f.unit : "");
-const bare = (f, v) => v === null || v === undefined ? "" : String(+(v * f.factor).toPrecision(4)).replace("-", "−");
+const bare = (f, v) => f.levels ? f.levels[v] ?? "" : v === null || v === undefined ? "" : String(+(v * f.factor).toPrecision(4)).replace("-", "−");
 const shown = (f, v) => { const text = bare(f, v); return text && f.unit ? text + " " + f.unit : text; };
 
 const get = name => document.getElementById(name);
@@ -46,6 +58,7 @@ const button = (words, pressed) => {
   e.addEventListener("click", pressed);
   return e;
 };
+const swatch = style => { const s = element("i"); s.setAttribute("style", style); return s; };
 const drawing = (tag, attributes = {}, ...children) => {
   const e = document.createElementNS("http://www.w3.org/2000/svg", tag);
   for (const [k, v] of Object.entries(attributes)) e.setAttribute(k, v);
@@ -82,3 +95,20 @@ function tint(share) {
 const BANDS = 48;
 /** The ramp in steps: canvases fill a colour faster than they parse one. */
 const tints = () => Array.from({ length: BANDS }, (_, k) => tint((k + 0.5) / BANDS));
+const CATEGORIES = 8;
+/** A colour for each level: told apart while there are few, a ramp beyond. */
+const levelColours = levels => levels.map((_, k) => levels.length <= CATEGORIES ? css("--level" + k) : tint(k / (levels.length - 1)));
+/** Does `work`, which rebuilds `box`; what had focus inside has it again, found by `key`. */
+function keepingFocus(box, key, work) {
+  const had = box.contains(document.activeElement) ? key(document.activeElement) : null;
+  work();
+  if (had !== null && !box.contains(document.activeElement)) [...box.querySelectorAll("button, input, summary")].find(e => key(e) === had)?.focus({ preventScroll: true });
+}
+let forgetting = 0;
+/** A word to the user, for a while, wherever the page is scrolled. */
+function say(words, isRefusal = false) {
+  get("said").textContent = words;
+  get("said").className = isRefusal ? "refusal" : "";
+  clearTimeout(forgetting);
+  forgetting = setTimeout(() => { get("said").textContent = ""; }, isRefusal ? 12000 : 5000);
+}

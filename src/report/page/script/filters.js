@@ -64,21 +64,37 @@ get("add").addEventListener("click", () => {
   addBrush(f);
   get("brushes").lastChild.querySelector("input").focus();
 });
-get("waves").addEventListener("change", () => filterSoon());
+for (const name of ["waves", "certified"]) get(name).addEventListener("change", () => filterSoon());
+// A box for each level of what differs among variants.
+const unwanted = new Map();
+function buildChoices() {
+  for (const l of levelled.filter(l => l.name !== "level.variant")) {
+    unwanted.set(l.name, new Set());
+    const boxes = l.levels.map((words, k) => {
+      const box = element("input", { type: "checkbox", checked: true });
+      box.addEventListener("change", () => { unwanted.get(l.name)[box.checked ? "delete" : "add"](k); filterSoon(); });
+      return element("label", {}, box, " " + words);
+    });
+    get("choices").append(element("fieldset", {}, element("legend", { textContent: l.words }), ...boxes));
+  }
+}
 get("clear").addEventListener("click", () => {
   place = null;
-  get("waves").checked = false;
+  get("waves").checked = get("certified").checked = false;
+  for (const box of get("choices").querySelectorAll("input")) box.checked = true;
+  for (const levels of unwanted.values()) levels.clear();
   for (const b of brushes.values()) b.set(b.f.low, b.f.high);
   filterSoon();
 });
 
 function filter() {
   const active = [...brushes.values()].filter(isActive).map(b => [column.get(b.f.name), b.low, b.high]);
-  const waves = get("waves").checked, best = new Map();
+  const waves = get("waves").checked, sure = get("certified").checked, best = new Map();
+  const barred = [...unwanted].filter(([, levels]) => levels.size).map(([name, levels]) => [column.get(name), levels]);
   kept = [];
   for (let i = 0; i < count; i++) {
     const inRange = active.every(([values, low, high]) => typeof values[i] === "number" && values[i] >= low && values[i] <= high)
-      && (!waves || id(i) in data.waveforms);
+      && barred.every(([values, levels]) => !levels.has(values[i])) && (!waves || id(i) in data.waveforms) && (!sure || isCertified(i));
     const here = placeOf.get(number(i, "cell"));
     if (inRange && here !== undefined) best.set(here, Math.max(best.get(here) ?? 0, number(i, "efficiency") ?? 0));
     isKept[i] = inRange && (place === null || here === place) ? 1 : 0;

@@ -4,10 +4,12 @@ const choose = { x: get("x"), y: get("y"), colour: get("colour") };
 const work = { whole: 0, over: 0 };
 let spots = [], told = null, plot = null, drag = null;
 for (const [axis, start] of [["x", "output_power_dbm"], ["y", "efficiency"], ["colour", "area_m2"]]) {
-  choose[axis].append(...figures.map(f => element("option", { value: f.name, textContent: head(f) })));
+  choose[axis].append(...figures.filter(f => !f.levels || axis === "colour").map(f => element("option", { value: f.name, textContent: head(f) })));
   choose[axis].value = figure.has(start) ? start : figures[0]?.name;
-  choose[axis].addEventListener("change", () => whole());
+  choose[axis].addEventListener("change", () => { whole(); legend(); });
 }
+// Of a few variants the colour tells first which is where.
+if (variants.length && variants.length <= CATEGORIES && figure.has(levelled[0].name)) choose.colour.value = levelled[0].name;
 
 function frame() {
   const box = canvas.getBoundingClientRect(), [fx, fy, fc] = ["x", "y", "colour"].map(a => figure.get(choose[a].value));
@@ -37,12 +39,15 @@ function whole() {
   c.textAlign = "left";
   c.fillText(head(fy), 8, 36);
   // The colours' key: low value, ramp, high value, over the data's right end. What spans a decade is coloured by its logarithm.
-  const isWide = fc.low > 0 && fc.high / fc.low > 8, level = v => isWide ? Math.log(v) : v;
-  const shades = tints(), high = bare(fc, fc.high), wide = 96, kx = right - c.measureText(high).width - 8 - wide;
-  shades.forEach((shade, k) => { c.fillStyle = shade; c.fillRect(kx + wide * k / BANDS, 6, wide / BANDS + 0.6, 11); });
-  c.fillStyle = css("--ink"); c.textAlign = "right";
-  c.fillText(high, right, 17);
-  c.fillText(head(fc) + (isWide ? " (logarithmic)  " : "  ") + bare(fc, fc.low), kx - 8, 17);
+  const isWide = !fc.levels && fc.low > 0 && fc.high / fc.low > 8, level = v => isWide ? Math.log(v) : v;
+  const shades = fc.levels ? levelColours(fc.levels) : tints();
+  if (!fc.levels) {
+    const high = bare(fc, fc.high), wide = 96, kx = right - c.measureText(high).width - 8 - wide;
+    shades.forEach((shade, k) => { c.fillStyle = shade; c.fillRect(kx + wide * k / BANDS, 6, wide / BANDS + 0.6, 11); });
+    c.fillStyle = css("--ink"); c.textAlign = "right";
+    c.fillText(high, right, 17);
+    c.fillText(head(fc) + (isWide ? " (logarithmic)  " : "  ") + bare(fc, fc.low), kx - 8, 17);
+  }
   // Designs that are brushed away stay as a trace below the others.
   const xs = column.get(fx.name), ys = column.get(fy.name), cs = column.get(fc.name), ghost = css("--ghost");
   const dot = (x, y, r) => { c.beginPath(); c.arc(x, y, r, 0, 6.3); c.fill(); };
@@ -56,11 +61,21 @@ function whole() {
   const radius = count > 2000 ? 3.2 : 4.2;
   for (const { x, y, i } of spots) {
     const v = cs[i], share = (level(v) - level(fc.low)) / (level(fc.high) - level(fc.low) || 1);
-    c.fillStyle = typeof v === "number" ? shades[Math.min(BANDS - 1, Math.floor(share * BANDS))] : ghost;
+    c.fillStyle = typeof v !== "number" ? ghost : fc.levels ? shades[v] : shades[Math.min(BANDS - 1, Math.floor(share * BANDS))];
     dot(x, y, radius);
   }
+  c.strokeStyle = css("--ink"); c.lineWidth = 1.8;
+  for (const { x, y, i } of spots) if (!isCertified(i)) { line(x - 6, y - 6, x + 6, y + 6); line(x - 6, y + 6, x + 6, y - 6); }
   spots.sort((a, b) => a.x - b.x || a.y - b.y);
   over();
+}
+
+/** Under the picture: the colours of levels, and what a cross means where there is one. */
+function legend() {
+  const f = figure.get(choose.colour.value), parts = [];
+  if (f?.levels) { const colours = levelColours(f.levels); parts.push(...f.levels.map((words, k) => element("span", {}, swatch("background:" + colours[k]), words))); }
+  if (!ids.every((_, i) => isCertified(i))) parts.push(element("span", { textContent: "× not certified optimal" }));
+  get("legend").replaceChildren(...parts);
 }
 
 /** The picture with what is chosen, told of and brushed on it. */
@@ -90,7 +105,7 @@ function tell(i) {
   if (i === told) return;
   told = i;
   get("told").textContent = i === null ? HINT
-    : id(i) + ": " + figures.slice(0, 12).map(f => { const v = shown(f, number(i, f.name)); return v && f.words + " " + v; }).filter(Boolean).join(" · ");
+    : id(i) + (variantWords(i) && " (" + variantWords(i) + ")") + (isCertified(i) ? "" : " (not certified optimal)") + ": " + figures.slice(0, 12).map(f => { const v = shown(f, number(i, f.name)); return v && f.words + " " + v; }).filter(Boolean).join(" · ");
   overSoon();
 }
 function nearest(x, y) {

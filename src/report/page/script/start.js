@@ -4,6 +4,9 @@ for (const name of ["efficiency", "output_power_dbm", "area_m2", "design.supply_
   if (f && f.high > f.low) addBrush(f);
 }
 offerBrushes();
+buildChoices();
+legend();
+get("certified").closest("label").hidden = ids.every((_, i) => isCertified(i));
 buildMap();
 get("waves").closest("label").hidden = ![...byId.keys()].some(name => name in data.waveforms);
 get("theme").addEventListener("click", () => {
@@ -12,6 +15,7 @@ get("theme").addEventListener("click", () => {
 });
 function themed() {
   get("theme").textContent = isDark() ? "Light colours" : "Dark colours";
+  legend();
   filterSoon();
 }
 matchMedia("(prefers-color-scheme: dark)").addEventListener("change", themed);
@@ -27,12 +31,13 @@ filter();
 cellTable.fill();
 showComparison();
 showSweep();
+showResiduals();
 if (count) {
   new ResizeObserver(once(whole)).observe(canvas);
   // Only a width that changed draws anew: the charts set their own height.
   let wide = 0;
   new ResizeObserver(once(() => {
     const now = document.documentElement.clientWidth;
-    if (now !== wide) { wide = now; showCharts(); showSweep(); }
+    if (now !== wide) { wide = now; showCharts(); showSweep(); showResiduals(); }
   })).observe(document.documentElement);
 }

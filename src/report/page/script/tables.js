@@ -20,17 +20,19 @@ function sortable(table, columns, start, rows, value, line, more) {
       a === null || b === null ? (a === null) - (b === null) : a < b ? -sign : a > b ? sign : 0);
     for (const t of titles) t.setAttribute("aria-sort", t.dataset.figure !== state.name ? "none" : state.up ? "ascending" : "descending");
     lines.clear();
-    body.replaceChildren(...sorted.slice(0, MOST_ROWS).map(([, r]) => { const l = line(r); lines.set(r, l); return l; }));
+    keepingFocus(body, e => e.dataset.row ?? null, () =>
+      body.replaceChildren(...sorted.slice(0, MOST_ROWS).map(([, r]) => { const l = line(r); lines.set(r, l); return l; })));
     more.textContent = sorted.length > MOST_ROWS ? "The first " + MOST_ROWS + " of " + sorted.length + " in this order are listed." : "";
   }
   return { fill, lines };
 }
 
-const listed = figures.slice(0, 16).concat(figures.filter(f => ["third_harmonic_dbc", "residual"].includes(f.name)));
+const listed = figures.filter(f => f.levels && f.name !== "level.variant").concat(figures.slice(0, 16), figures.filter(f => ["third_harmonic_dbc", "residual"].includes(f.name)));
 const designs = sortable(get("designs"), [{ name: "id", words: "Design", unit: "", rising: true }, ...listed.map(f => ({ ...f, rising: f.name === "area_m2" }))], "efficiency",
   () => kept, (i, f) => f.name === "id" ? id(i) : number(i, f.name),
   i => {
-    const choice = button(id(i), () => compare(i)), line = element("tr", {}, element("td", {}, choice));
+    const choice = button(id(i) + (isCertified(i) ? "" : " ×"), () => compare(i)), line = element("tr", {}, element("td", {}, choice));
+    choice.dataset.row = i;
     line.append(...listed.map(f => element("td", { textContent: bare(f, number(i, f.name)) })));
     markLine(line, i);
     return line;
@@ -41,10 +43,38 @@ function markLine(line, i) {
   line.querySelector("button").setAttribute("aria-pressed", is);
 }
 
-const cellColumns = [
-  ["cell", "Cell", "", 1, true], ["loaded_q", "Loaded Q", "", 1, true], ["supply_v", "Supply", "V", 1, true], ["best_efficiency", "Best efficiency", "%", 100],
+const CERTIFIED = 1e-4;
+const plainly = (f, v) => f.factor === 1 && Number.isInteger(v) ? String(v) : bare(f, v);
+const columnsOf = list => list.map(([name, words, unit, factor, rising]) => ({ name, words, unit, factor, rising }));
+const cellColumns = columnsOf([
+  ["cell", "Cell", "", 1, true], ...(variants.length ? [["variant", "Variant", "", 1, true]] : []),
+  ["loaded_q", "Loaded Q", "", 1, true], ["supply_v", "Supply", "V", 1, true], ["best_efficiency", "Best efficiency", "%", 100],
   ["least_output_power_dbm", "Least output power", "dBm", 1], ["most_output_power_dbm", "Most output power", "dBm", 1],
-  ["least_area_m2", "Least area", "mm²", 1e6, true], ["front_size", "Designs", "", 1], ["hypervolume", "Hypervolume", "", 1], ["evaluations", "Evaluations", "", 1],
-].map(([name, words, unit, factor, rising]) => ({ name, words, unit, factor, rising }));
-const cellTable = sortable(get("cells"), cellColumns, "best_efficiency", () => data.cells, (c, f) => c[f.name],
-  c => element("tr", {}, ...cellColumns.map(f => element("td", { textContent: f.factor === 1 && Number.isInteger(c[f.name]) ? c[f.name] : bare(f, c[f.name]) }))), get("cells-listed"));
+  ["least_area_m2", "Least area", "mm²", 1e6, true], ["front_size", "Points", "", 1], ["hypervolume", "Hypervolume", "", 1], ["evaluations", "Evaluations", "", 1],
+  ["worst_residual", "Worst residual", "", 1],
+]);
+const cellVariant = c => variants[variantOfCell.get(c.cell)].words;
+const cellTable = sortable(get("cells"), cellColumns, "best_efficiency", () => data.cells, (c, f) => f.name === "variant" ? variantOfCell.get(c.cell) : c[f.name],
+  c => element("tr", {}, ...cellColumns.map(f => element("td", { textContent: f.name === "variant" ? cellVariant(c)
+    : plainly(f, c[f.name]) + (f.name === "worst_residual" && c[f.name] > CERTIFIED ? " ×" : "") }))), get("cells-listed"));
+
+// A line for each variant of a sweep: the best of its own cells.
+const ends = (list, name, end) => { const found = list.map(c => c[name]).filter(v => v !== null); return found.length ? end(...found) : null; };
+const variantLines = variants.map((v, k) => {
+  const own = data.cells.filter(c => variantOfCell.get(c.cell) === k), sum = name => own.reduce((all, c) => all + c[name], 0);
+  return {
+    variant: k, best_efficiency: ends(own, "best_efficiency", Math.max), most_output_power_dbm: ends(own, "most_output_power_dbm", Math.max),
+    least_area_m2: ends(own, "least_area_m2", Math.min), points: sum("front_size"), on_front: ids.filter((_, i) => variantOf(i) === k).length,
+    evaluations: sum("evaluations"), worst_residual: ends(own, "worst_residual", Math.max),
+  };
+});
+const variantColumns = columnsOf([
+  ["variant", "Variant", "", 1, true], ["best_efficiency", "Best efficiency", "%", 100], ["most_output_power_dbm", "Most output power", "dBm", 1],
+  ["least_area_m2", "Least area", "mm²", 1e6, true], ["on_front", "On the overall front", "", 1], ["points", "Points of its cells", "", 1],
+  ["evaluations", "Evaluations", "", 1], ["worst_residual", "Worst residual", "", 1],
+]);
+if (variants.length) {
+  sortable(get("variants"), variantColumns, "best_efficiency", () => variantLines, (v, f) => v[f.name],
+    v => element("tr", {}, ...variantColumns.map(f => element("td", { textContent: f.name === "variant" ? variants[v.variant].words
+      : plainly(f, v[f.name]) + (f.name === "worst_residual" && v[f.name] > CERTIFIED ? " ×" : "") }))), get("variants-listed")).fill();
+}
