@@ -86,10 +86,13 @@ fn stage(run: &Value) -> Rows {
         ),
         ("Network", network),
         (
-            "Driven by a block that can drive",
+            "Input capacitance",
             quantity(run, "/study/driver/input_capacitance_f", "F"),
         ),
-        ("Drivers' PMOS/NMOS", text(run, "/study/driver/ratio")),
+        (
+            "Drivers' PMOS/NMOS",
+            number(run, "/study/driver/ratio").map_or(String::new(), tidy),
+        ),
         ("Drivers' overlap loss", crowbar),
         ("Drivers' swing", swing(run.pointer("/study/driver/swing"))),
     ]
@@ -196,12 +199,12 @@ fn limits(run: &Value) -> Rows {
         ));
     }
     rows.push(("Objectives", objectives(run)));
-    rows.push(("Fronts", fronts(run)));
+    rows.push(("Fronts", fronts(run).unwrap_or_default()));
     rows
 }
 
-/// What the overall front is taken over; empty in a study of one variant.
-fn fronts(run: &Value) -> String {
+/// What the overall front is taken over; none in a study of one variant.
+pub fn fronts(run: &Value) -> Option<String> {
     let by: Vec<&str> = run
         .pointer("/study/search/fronts_by")
         .and_then(Value::as_array)
@@ -219,9 +222,9 @@ fn fronts(run: &Value) -> String {
         .collect();
     let is_sweep = run.pointer("/study/sweep").is_some();
     match (by.is_empty(), is_sweep) {
-        (false, _) => format!("one for each {}", joined(&by)),
-        (true, true) => "one over all variants".into(),
-        (true, false) => String::new(),
+        (false, _) => Some(format!("one for each {}", joined(&by))),
+        (true, true) => Some("one over all variants".into()),
+        (true, false) => None,
     }
 }
 

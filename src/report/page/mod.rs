@@ -102,8 +102,9 @@ fn contents(input: &PageInput<'_>) -> Markup {
             ol class="answer" {
                 @for line in words::answer(input.designs, &variants) {
                     li {
-                        b { (line.what) } (line.figures)
-                        @if let Some(id) = line.id { " " button type="button" data-design=(id) { (id) } }
+                        b { (line.what) }
+                        @if let Some(id) = line.id { ", " button type="button" data-design=(id) { (id) } }
+                        (line.figures)
                     }
                 }
             }
@@ -150,6 +151,7 @@ fn explore(input: &PageInput<'_>) -> Markup {
     html! {
         section aria-labelledby="explore" {
             h2 id="explore" { "The front" }
+            @if let Some(fronts) = asked::fronts(input.run) { p class="faint" { "Fronts: " (fronts) "." } }
             div class="controls" {
                 label { "Across " select id="x" {} }
                 label { "Up " select id="y" {} }
@@ -185,8 +187,9 @@ fn explore(input: &PageInput<'_>) -> Markup {
                 p { label { input type="checkbox" id="shares"; " Bars as shares of each design's own total" } }
                 div class="half" {
                     div id="charts" {}
-                    div id="side" class="scroll" tabindex="0" role="region" aria-label="Figures of the designs compared" {}
+                    div id="periods" {}
                 }
+                    div id="side" class="scroll" tabindex="0" role="region" aria-label="Figures of the designs compared" {}
             }
         }
         section aria-labelledby="list" {

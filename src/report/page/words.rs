@@ -154,7 +154,13 @@ pub type Rows = Vec<(&'static str, String)>;
 pub fn ended(run: &Value, designs: &[DesignRecord]) -> Rows {
     let uncertified = designs.iter().filter(|d| !d.certified).count();
     let residual = |name: &str| {
-        number(run, &format!("/residuals/{name}")).map_or(String::new(), |r| format!("{r:.1e}"))
+        number(run, &format!("/residuals/{name}")).map_or(String::new(), |r| {
+            if r < 0.01 {
+                format!("{r:.1e}").replace("e-", "e−")
+            } else {
+                format!("{r:.2}")
+            }
+        })
     };
     let rows = vec![
         ("Ended because", text(run, "/ended_because")),
@@ -167,7 +173,7 @@ pub fn ended(run: &Value, designs: &[DesignRecord]) -> Rows {
             ),
         ),
         ("Part", text(run, "/part")),
-        ("Evaluations", text(run, "/evaluations")),
+        ("Evaluations", grouped(&text(run, "/evaluations"))),
         (
             "Overall front",
             format!("{} designs", text(run, "/front_size")),
@@ -204,6 +210,18 @@ pub fn ended(run: &Value, designs: &[DesignRecord]) -> Rows {
         ("Residual, worst", residual("worst")),
     ];
     rows.into_iter().filter(|(_, v)| !v.is_empty()).collect()
+}
+
+/// A whole number with its thousands set apart.
+fn grouped(digits: &str) -> String {
+    let mut text = String::new();
+    for (k, digit) in digits.chars().enumerate() {
+        if k > 0 && (digits.len() - k).is_multiple_of(3) {
+            text.push(',');
+        }
+        text.push(digit);
+    }
+    text
 }
 
 /// Where the figures come from.
@@ -249,6 +267,18 @@ fn moment(unix_s: f64) -> String {
 mod tests {
     use super::*;
     use serde_json::json;
+
+    #[test]
+    fn law_thousands_are_set_apart_from_the_right() {
+        for (digits, text) in [
+            ("", ""),
+            ("999", "999"),
+            ("1000", "1,000"),
+            ("1234567", "1,234,567"),
+        ] {
+            assert_eq!(grouped(digits), text);
+        }
+    }
 
     #[test]
     fn law_moments_are_dates_and_times_of_day() {

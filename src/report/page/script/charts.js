@@ -90,7 +90,7 @@ function residualPicture(wide) {
   const decade = v => v > 0 ? Math.min(Math.max(Math.floor(Math.log10(v)), -10), 2) : -10, counts = new Map();
   for (const v of found) counts.set(decade(v), (counts.get(decade(v)) ?? 0) + 1);
   const from = Math.min(...counts.keys(), BOUND - 2), to = Math.max(...counts.keys(), BOUND) + 1, high = 190, most = Math.max(...counts.values());
-  const at = { left: 46, right: wide - 8, top: 26, bottom: high - 38 };
+  const at = { left: 46, right: wide - 18, top: 26, bottom: high - 38 };
   at.px = d => at.left + (d - from) / (to - from) * (at.right - at.left);
   at.py = n => at.bottom - n / (most * 1.12) * (at.bottom - at.top);
   const svg = picture(wide, high, "Residuals of the front's designs by decade: " + [...counts].sort(([a], [b]) => a - b).map(([d, n]) => n + " from 1e" + d).join(", "));

@@ -44,11 +44,11 @@ function card(i, slot) {
     const failed = () => { whole.open = true; getSelection().selectAllChildren(text); };
     if (navigator.clipboard) navigator.clipboard.writeText(text.textContent).then(() => { copy.textContent = "Copied"; }, failed); else failed();
   });
-  const box = element("article", { className: "card" }, element("h3", {}, line(slot), " " + id(i)));
+  const box = element("article", { className: "card" }, element("h3", {}, line(slot), " " + id(i), button("Drop", () => { compare(i); get("comparison").focus(); })));
   if (variantWords(i)) box.append(element("p", { className: "faint", textContent: variantWords(i) }));
   if (!isCertified(i)) box.append(element("p", { className: "doubt", textContent: "× Not certified optimal: residual " + shown(figure.get("residual"), number(i, "residual")) + "." }));
   box.append(
-    element("p", {}, button("Save record", () => save(id(i) + ".json", text.textContent)), " ", copy, " ", button("Drop", () => { compare(i); get("comparison").focus(); })),
+    element("p", {}, button("Save record", () => save(id(i) + ".json", text.textContent)), " ", copy),
     element("p", {}, "Sheet for layout: ", element("code", { textContent: "widefront sheet RUN " + id(i) })));
   const sheet = data.sheets[id(i)];
   if (sheet) box.append(element("p", {}, button("Save sheet", () => save(id(i) + "-sheet.json", JSON.stringify(sheet, null, 1)))));
@@ -60,7 +60,7 @@ function card(i, slot) {
 
 function comparisonTable(slots) {
   const chosen = slots.map(s => picked[s]);
-  const share = (name, total) => i => { const [v, all] = [number(i, name), number(i, total)]; return v === null || !all ? "" : " (" + (100 * v / all).toFixed(1).replace("-", "−") + " %)"; };
+  const share = (name, total) => i => { const [v, all] = [number(i, name), number(i, total)]; return v === null || !all ? "" : " (" + (100 * v / all).toFixed(1).replace("-0.0", "0.0").replace("-", "−") + " %)"; };
   const lines = (title, rows) => element("tbody", {}, element("tr", {}, element("th", { scope: "rowgroup", colSpan: chosen.length + 1, textContent: title })),
     ...rows.map(([f, extra]) => element("tr", {}, element("th", { scope: "row", textContent: head(f) }), ...chosen.map(i => element("td", { textContent: bare(f, number(i, f.name)) + extra(i) })))));
   const nothing = () => "";
@@ -92,15 +92,17 @@ function showCharts() {
   const shares = get("shares").checked;
   const wide = Math.floor(get("charts").clientWidth), title = text => element("h3", { textContent: text });
   const recorded = slots.filter(s => id(picked[s]) in data.waveforms), without = slots.filter(s => !recorded.includes(s)).map(s => id(picked[s]));
-  const parts = [title("Where the supply's power goes"), ...bars(wide, chosen, partNames.losses, "mW", 1e3, "Power", shares),
-    title("Where the area goes"), ...bars(wide, chosen, partNames.area, "mm²", 1e6, "Area", shares), title("One period")];
+  const budgets = [title("Where the power goes"), ...bars(wide, chosen, partNames.losses, "mW", 1e3, "Power", shares),
+    title("Where the area goes"), ...bars(wide, chosen, partNames.area, "mm²", 1e6, "Area", shares)];
+  const parts = [title("One period")];
   if (recorded.length) {
     parts.push(traces(wide, recorded, "drain_v", "Drain voltage, V", 1), traces(wide, recorded, "current_a", "Loop current, mA", 1e3),
       element("div", { className: "key" }, ...recorded.map(s => element("span", {}, line(s), " " + id(picked[s])))));
   }
   if (without.length) parts.push(element("p", { className: "faint", textContent: "No waveform recorded for " + without.join(", ") + ". Of this front " +
     [...byId.keys()].filter(name => name in data.waveforms).length + " designs have one; “Only with a waveform” beside the front shows which." }));
-  get("charts").replaceChildren(...parts);
+  get("charts").replaceChildren(...budgets);
+  get("periods").replaceChildren(...parts);
 }
 function showSweep() {
   if (data.sweep) get("sweep").replaceChildren(...sweepPicture(Math.floor(get("sweep").clientWidth)));

@@ -44,7 +44,14 @@ const figures = [
 }).filter(f => f.low <= f.high);
 const figure = new Map(figures.map(f => [f.name, f]));
 const head = f => f.words + (f.unit ? ", " + f.unit : "");
-const bare = (f, v) => f.levels ? f.levels[v] ?? "" : v === null || v === undefined ? "" : String(+(v * f.factor).toPrecision(4)).replace("-", "−");
+/** Four digits; columns of many values keep their zeros, so that they line up. */
+function digits(v, isEven) {
+  if (Math.abs(v) < 1e-12) return "0";
+  if (Math.abs(v) < 1e-3) return v.toExponential(2);
+  if (Number.isInteger(v) || Math.abs(v) >= 1e4) return Math.round(v).toLocaleString("en");
+  return isEven ? v.toPrecision(4) : String(+v.toPrecision(4));
+}
+const bare = (f, v, isEven = false) => f.levels ? f.levels[v] ?? "" : v === null || v === undefined ? "" : digits(+(v * f.factor).toPrecision(12), isEven).replaceAll("-", "−");
 const shown = (f, v) => { const text = bare(f, v); return text && f.unit ? text + " " + f.unit : text; };
 
 const get = name => document.getElementById(name);

@@ -124,8 +124,8 @@ for (const cell of data.cells) {
 }
 function buildMap() {
   const grid = get("map"), name = text => element("span", { className: "name", textContent: text });
-  grid.style.gridTemplateColumns = "auto repeat(" + supplies.length + ", minmax(36px, 1fr))";
-  grid.append(name("Q \\ V"), ...supplies.map(s => name(free(s))));
+  grid.style.gridTemplateColumns = "auto repeat(" + supplies.length + ", minmax(36px, 110px))";
+  grid.append(name("Loaded Q \\ supply, V"), ...supplies.map(s => name(free(s))));
   for (const q of qs) {
     grid.append(name(free(q)));
     for (const s of supplies) {

@@ -58,7 +58,7 @@ function whole() {
     const x = px(xs[i]), y = py(ys[i]);
     if (isKept[i]) spots.push({ x, y, i }); else dot(x, y, 1.8);
   }
-  const radius = count > 2000 ? 3.2 : 4.2;
+  const radius = count > 800 ? 3.2 : 4.2;
   for (const { x, y, i } of spots) {
     const v = cs[i], share = (level(v) - level(fc.low)) / (level(fc.high) - level(fc.low) || 1);
     c.fillStyle = typeof v !== "number" ? ghost : fc.levels ? shades[v] : shades[Math.min(BANDS - 1, Math.floor(share * BANDS))];

@@ -10,6 +10,7 @@ function sortable(table, columns, start, rows, value, line, more) {
       fill();
     }));
     title.dataset.figure = f.name;
+    if (f.levels || f.name === "variant") title.className = "text";
     return title;
   });
   const body = element("tbody");
@@ -27,13 +28,15 @@ function sortable(table, columns, start, rows, value, line, more) {
   return { fill, lines };
 }
 
+/** Whether a figure has few values, as of a grid. */
+const fewStops = f => new Set(column.get(f.name)).size <= FEW;
 const listed = figures.filter(f => f.levels && f.name !== "level.variant").concat(figures.slice(0, 16), figures.filter(f => ["third_harmonic_dbc", "residual"].includes(f.name)));
 const designs = sortable(get("designs"), [{ name: "id", words: "Design", unit: "", rising: true }, ...listed.map(f => ({ ...f, rising: f.name === "area_m2" }))], "efficiency",
   () => kept, (i, f) => f.name === "id" ? id(i) : number(i, f.name),
   i => {
     const choice = button(id(i) + (isCertified(i) ? "" : " ×"), () => compare(i)), line = element("tr", {}, element("td", {}, choice));
     choice.dataset.row = i;
-    line.append(...listed.map(f => element("td", { textContent: bare(f, number(i, f.name)) })));
+    line.append(...listed.map(f => element("td", { className: f.levels ? "text" : "", textContent: bare(f, number(i, f.name), !fewStops(f)) })));
     markLine(line, i);
     return line;
   }, get("listed"));
@@ -44,7 +47,9 @@ function markLine(line, i) {
 }
 
 const CERTIFIED = 1e-4;
-const plainly = (f, v) => f.factor === 1 && Number.isInteger(v) ? String(v) : bare(f, v);
+const aligned = new Set(["best_efficiency", "least_output_power_dbm", "most_output_power_dbm", "least_area_m2", "hypervolume"]);
+const cellOf = (f, v, words) => element("td", { className: f.name === "variant" ? "text" : "",
+  textContent: f.name === "variant" ? words : bare(f, v, aligned.has(f.name)) + (f.name === "worst_residual" && v > CERTIFIED ? " ×" : "") });
 const columnsOf = list => list.map(([name, words, unit, factor, rising]) => ({ name, words, unit, factor, rising }));
 const cellColumns = columnsOf([
   ["cell", "Cell", "", 1, true], ...(variants.length ? [["variant", "Variant", "", 1, true]] : []),
@@ -55,8 +60,7 @@ const cellColumns = columnsOf([
 ]);
 const cellVariant = c => variants[variantOfCell.get(c.cell)].words;
 const cellTable = sortable(get("cells"), cellColumns, "best_efficiency", () => data.cells, (c, f) => f.name === "variant" ? variantOfCell.get(c.cell) : c[f.name],
-  c => element("tr", {}, ...cellColumns.map(f => element("td", { textContent: f.name === "variant" ? cellVariant(c)
-    : plainly(f, c[f.name]) + (f.name === "worst_residual" && c[f.name] > CERTIFIED ? " ×" : "") }))), get("cells-listed"));
+  c => element("tr", {}, ...cellColumns.map(f => cellOf(f, c[f.name], f.name === "variant" ? cellVariant(c) : ""))), get("cells-listed"));
 
 // A line for each variant of a sweep: the best of its own cells.
 const ends = (list, name, end) => { const found = list.map(c => c[name]).filter(v => v !== null); return found.length ? end(...found) : null; };
@@ -75,6 +79,5 @@ const variantColumns = columnsOf([
 ]);
 if (variants.length) {
   sortable(get("variants"), variantColumns, "best_efficiency", () => variantLines, (v, f) => v[f.name],
-    v => element("tr", {}, ...variantColumns.map(f => element("td", { textContent: f.name === "variant" ? variants[v.variant].words
-      : plainly(f, v[f.name]) + (f.name === "worst_residual" && v[f.name] > CERTIFIED ? " ×" : "") }))), get("variants-listed")).fill();
+    v => element("tr", {}, ...variantColumns.map(f => cellOf(f, v[f.name], variants[v.variant].words))), get("variants-listed")).fill();
 }
