@@ -266,7 +266,6 @@ fn moment(unix_s: f64) -> String {
 #[cfg(test)]
 mod tests {
     use super::*;
-    use serde_json::json;
 
     #[test]
     fn law_thousands_are_set_apart_from_the_right() {
