@@ -125,7 +125,7 @@ pub fn answer<'a>(designs: &'a [DesignRecord], variants: &Variants) -> Vec<Line<
             ));
             Some(Line {
                 what,
-                figures,
+                figures: unbroken(&figures),
                 id: Some(&design.id),
             })
         })
@@ -139,6 +139,15 @@ pub fn answer<'a>(designs: &'a [DesignRecord], variants: &Variants) -> Vec<Line<
     } else {
         lines
     }
+}
+
+/// With units kept on the line of their numbers.
+fn unbroken(text: &str) -> String {
+    ["%", "dBm", "mm²", "V", "µm", "°C", "MHz", "GHz"]
+        .iter()
+        .fold(text.to_owned(), |text, unit| {
+            text.replace(&format!(" {unit}"), &format!("\u{a0}{unit}"))
+        })
 }
 
 /// Four digits are plenty in a sentence.

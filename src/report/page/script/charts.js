@@ -61,7 +61,7 @@ function sweepPicture(wide) {
   const at = { left: 46, right: wide - 8, top: 24, bottom: high - 38 }, [from, to] = [Math.log(widths[0]), Math.log(widths.at(-1))];
   at.px = w => at.left + (Math.log(w) - from) / (to - from) * (at.right - at.left);
   at.py = v => at.bottom - v / most * (at.bottom - at.top);
-  const best = efficiency.indexOf(Math.max(...efficiency)), words = "best efficiency " + (100 * efficiency[best]).toFixed(1) + " % at " + +widths[best].toPrecision(3) + " µm";
+  const allowed = efficiency.map((e, i) => feasible[i] || !feasible.some(Boolean) ? e : -1), best = allowed.indexOf(Math.max(...allowed)), words = "best efficiency " + (100 * efficiency[best]).toFixed(1) + " % at " + +widths[best].toPrecision(3) + " µm";
   const svg = picture(wide, high, "Losses of " + name + " against NMOS width; " + words);
   const order = lossNames.map((_, k) => k).sort((a, b) => Math.max(...losses[b]) - Math.max(...losses[a]));
   let floor = widths.map(() => 0);

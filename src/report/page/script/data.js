@@ -48,7 +48,8 @@ const head = f => f.words + (f.unit ? ", " + f.unit : "");
 function digits(v, isEven) {
   if (Math.abs(v) < 1e-12) return "0";
   if (Math.abs(v) < 1e-3) return v.toExponential(2);
-  if (Number.isInteger(v) || Math.abs(v) >= 1e4) return Math.round(v).toLocaleString("en");
+  if (Math.abs(v) >= 1e4) return Math.round(v).toLocaleString("en");
+  if (Number.isInteger(v)) return String(v);
   return isEven ? v.toPrecision(4) : String(+v.toPrecision(4));
 }
 const bare = (f, v, isEven = false) => f.levels ? f.levels[v] ?? "" : v === null || v === undefined ? "" : digits(+(v * f.factor).toPrecision(12), isEven).replaceAll("-", "−");

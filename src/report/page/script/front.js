@@ -42,11 +42,11 @@ function whole() {
   const isWide = !fc.levels && fc.low > 0 && fc.high / fc.low > 8, level = v => isWide ? Math.log(v) : v;
   const shades = fc.levels ? levelColours(fc.levels) : tints();
   if (!fc.levels) {
-    const high = bare(fc, fc.high), wide = 96, kx = right - c.measureText(high).width - 8 - wide;
+    const high = bare(fc, fc.high), wide = box.width < 460 ? 52 : 96, kx = right - c.measureText(high).width - 8 - wide;
     shades.forEach((shade, k) => { c.fillStyle = shade; c.fillRect(kx + wide * k / BANDS, 6, wide / BANDS + 0.6, 11); });
     c.fillStyle = css("--ink"); c.textAlign = "right";
     c.fillText(high, right, 17);
-    c.fillText(head(fc) + (isWide ? " (logarithmic)  " : "  ") + bare(fc, fc.low), kx - 8, 17);
+    c.fillText(head(fc) + (isWide ? " (log)  " : "  ") + bare(fc, fc.low), kx - 8, 17);
   }
   // Designs that are brushed away stay as a trace below the others.
   const xs = column.get(fx.name), ys = column.get(fy.name), cs = column.get(fc.name), ghost = css("--ghost");
