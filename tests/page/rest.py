@@ -137,6 +137,11 @@ def uncertified(browser, folder):
     assert "not certified optimal" in page.inner_text(".answer")
     assert "Not certified optimal" in page.inner_text("#cards .card >> nth=0")
     assert page.locator("#residuals .unsure").count() == 1
+    # A cross in ink on the front: looked at on an arm, beyond the dot and clear of the ring of what is compared.
+    arm = """() => { const s = spots.find(s => !isCertified(s.i) && !picked.includes(s.i)), d = devicePixelRatio || 1;
+      const c = base.getContext('2d').getImageData(Math.round((s.x + 5) * d), Math.round((s.y + 5) * d), 1, 1).data;
+      return Math.max(c[0], c[1], c[2]) * (c[3] / 255) + 255 - c[3]; }"""
+    assert view.value(arm) < 90, view.value(arm)
     page.check("#certified")
     kept, everything = view.counts()
     assert kept == everything - UNCERTIFIED
