@@ -3,7 +3,7 @@
 use super::{Failure, print, tell};
 use crate::fit::residual::{GATE, JUNCTION, ON, Residual};
 use crate::fit::{self, Existing, FitError, FittedPair, Options, PerDevice};
-use crate::quantity::Dimension;
+use crate::quantity::{Dimension, civil_date};
 use crate::report::figures::{self, DeviceFit, MeasuredPoint, Series};
 use clap::Args;
 use std::io::Write;
@@ -239,7 +239,7 @@ fn today() -> Result<String, Failure> {
     let since = std::time::SystemTime::now().duration_since(std::time::UNIX_EPOCH);
     let since =
         since.map_err(|error| Failure::Run(format!("the clock: {error}\n  help: give --date")))?;
-    Ok(fit::civil_date((since.as_secs() / 86_400) as i64))
+    Ok(civil_date((since.as_secs() / 86_400) as i64))
 }
 
 /// Writes a file whole or not at all.

@@ -3,12 +3,17 @@
 use super::{Failure, print};
 use crate::report::{self, ReportError};
 use crate::run::folder::{RunFolder, read_run};
+use atomic_write_file::AtomicWriteFile;
+use std::io::Write;
 use std::path::{Path, PathBuf};
 
 #[derive(Debug, clap::Args)]
 pub struct ReportArguments {
     /// The run folder.
     run: PathBuf,
+    /// Write the page alone to this file and leave the run folder as it is.
+    #[arg(long, value_name = "FILE")]
+    out: Option<PathBuf>,
 }
 
 impl From<ReportError> for Failure {
@@ -21,6 +26,15 @@ impl From<ReportError> for Failure {
 pub fn run(arguments: &ReportArguments) -> Result<(), Failure> {
     let path: &Path = &arguments.run;
     read_run(path)?;
+    if let Some(out) = &arguments.out {
+        let page = report::page_of(path)?;
+        let written = AtomicWriteFile::open(out).and_then(|mut file| {
+            file.write_all(page.as_bytes())?;
+            file.commit()
+        });
+        written.map_err(|e| Failure::Run(format!("{}: {e}", out.display())))?;
+        return print(&format!("wrote {}\n", out.display()));
+    }
     let page = report::write(&RunFolder::open(path)?)?;
     print(&format!("wrote {} and figures\n", page.display()))
 }

@@ -23,7 +23,7 @@ pub use capacitance::{Gate, Junction, NoCapacitance};
 pub use device::FittedDevice;
 pub use leakage::Off;
 pub use merit::{Merit, is_technology, merit, merits};
-pub use options::{Options, PerDevice, civil_date};
+pub use options::{Options, PerDevice};
 pub use points::{Curves, Point};
 pub use report::{report, residuals_csv};
 pub use residual::Residual;

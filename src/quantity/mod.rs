@@ -7,10 +7,12 @@
 //! Prefixes shift the decimal exponent of the written number before it becomes binary, so `"10 um"` is the number
 //! 1e-5 and not the product 10·1e-6. `degC` and `dBm` alone are computed.
 
+mod date;
 mod dimension;
 mod format;
 mod unit;
 
+pub use date::civil_date;
 pub use dimension::Dimension;
 pub use format::{format, format_in, micrometres};
 

@@ -5,11 +5,12 @@ pub mod page;
 
 use crate::run::RunError;
 use crate::run::folder::{RunFolder, read_front, read_optional, read_run};
-use crate::run::records::{PeriodRecord, SupplyFront, WidthSweep};
-use crate::run::summary::read_cells;
+use crate::run::records::{DesignList, PeriodRecord, SupplyFront, WidthSweep};
+use crate::run::summary::{CellLine, read_cells};
 use figures::{FigureError, FigureInput};
 use page::PageInput;
-use std::path::PathBuf;
+use serde_json::Value;
+use std::path::{Path, PathBuf};
 use thiserror::Error;
 
 /// Why there is no report.
@@ -23,39 +24,86 @@ pub enum ReportError {
     Figure(#[from] FigureError),
 }
 
+/// The records that a report is made of.
+struct Records {
+    run: Value,
+    front: DesignList,
+    cells: Vec<CellLine>,
+    sweep: Option<WidthSweep>,
+    period: Option<PeriodRecord>,
+    waveforms: Vec<PeriodRecord>,
+    sheets: Vec<(String, Value)>,
+}
+
+impl Records {
+    fn read(path: &Path) -> Result<Self, ReportError> {
+        let waveforms: Option<_> = read_optional(path, "waveforms.json")?;
+        let front = read_front(path)?;
+        let mut sheets = Vec::new();
+        for design in &front.designs {
+            // An id that an altered record makes a path names no sheet.
+            if Path::new(&design.id).components().count() != 1 {
+                continue;
+            }
+            if let Some(sheet) = read_optional(path, &format!("sheets/{}.json", design.id))? {
+                sheets.push((design.id.clone(), sheet));
+            }
+        }
+        Ok(Self {
+            run: read_run(path)?,
+            cells: read_cells(path)?,
+            sweep: read_optional(path, "figures/width_sweep.json")?,
+            period: read_optional(path, "figures/period.json")?,
+            waveforms: waveforms.unwrap_or_default(),
+            front,
+            sheets,
+        })
+    }
+
+    fn page(&self) -> String {
+        page::page(&PageInput {
+            run: &self.run,
+            designs: &self.front.designs,
+            cells: &self.cells,
+            periods: &self.waveforms,
+            sweep: self.sweep.as_ref(),
+            sheets: &self.sheets,
+        })
+    }
+}
+
+/// The page of the run in `path`; nothing there is changed.
+///
+/// # Errors
+/// [`ReportError::Records`].
+pub fn page_of(path: &Path) -> Result<String, ReportError> {
+    Ok(Records::read(path)?.page())
+}
+
 /// Makes figures and page of the run in `folder` from its records; returns the page's file.
 ///
 /// # Errors
 /// [`ReportError`]; every file is the old or the new one, whole.
 pub fn write(folder: &RunFolder) -> Result<PathBuf, ReportError> {
     let path = folder.path();
-    let run = read_run(path)?;
-    let front = read_front(path)?;
-    let cells = read_cells(path)?;
-    let sweep: Option<WidthSweep> = read_optional(path, "figures/width_sweep.json")?;
-    let period: Option<PeriodRecord> = read_optional(path, "figures/period.json")?;
-    let periods: Option<Vec<PeriodRecord>> = read_optional(path, "waveforms.json")?;
+    let records = Records::read(path)?;
     let supplies: Option<Vec<SupplyFront>> = read_optional(path, "figures/supplies.json")?;
-    let limit = |name: &str| run["study"]["limits"][name].as_f64();
-    let best = figures::best_cells(&cells);
+    let limit = |name: &str| records.run["study"]["limits"][name].as_f64();
+    let best = figures::best_cells(&records.cells);
     let input = FigureInput {
-        title: run["study"]["title"].as_str().unwrap_or_default(),
-        designs: &front.designs,
+        title: records.run["study"]["title"].as_str().unwrap_or_default(),
+        designs: &records.front.designs,
         cells: &best,
         supplies: supplies.as_deref().unwrap_or_default(),
-        frequency_hz: run["study"]["frequency_hz"].as_f64().unwrap_or_default(),
+        frequency_hz: records.run["study"]["frequency_hz"]
+            .as_f64()
+            .unwrap_or_default(),
         second_harmonic_limit_dbc: limit("second_harmonic_dbc"),
         third_harmonic_limit_dbc: limit("third_harmonic_dbc"),
-        sweep: sweep.as_ref(),
-        period: period.as_ref(),
+        sweep: records.sweep.as_ref(),
+        period: records.period.as_ref(),
     };
     figures::write_all(&path.join("figures"), &input)?;
-    let page = page::page(&PageInput {
-        run: &run,
-        designs: &front.designs,
-        cells: &cells,
-        periods: &periods.unwrap_or_default(),
-    });
-    folder.write("report.html", page.as_bytes())?;
+    folder.write("report.html", records.page().as_bytes())?;
     Ok(path.join("report.html"))
 }

@@ -16,7 +16,6 @@ use crate::search::{Context, Spirals};
 use crate::study::{Design, Space, Study};
 use crate::technology::Technology;
 use rayon::prelude::*;
-use std::collections::BTreeSet;
 use std::path::{Path, PathBuf};
 use std::str::FromStr;
 use std::sync::atomic::{AtomicBool, AtomicU64, AtomicUsize, Ordering};
@@ -380,8 +379,8 @@ fn close(record: &mut RunRecord, summary: &Summary) {
     record.residuals = summary.residuals;
 }
 
-/// What figures and report show beside the fronts: each supply's front, losses against width around the most efficient design, one period of
-/// it, and of the most efficient design of each cell on the overall front.
+/// What figures and report show beside the fronts: each supply's front, losses against width around the most efficient
+/// design, one period of it and of other designs that stand for the front.
 fn illustrations(job: &Job<'_>, folder: &RunFolder, summary: &Summary) -> Result<(), RunError> {
     /// Widths of the sweep, from a fifth to five times the design's.
     const WIDTHS: usize = 61;
@@ -430,14 +429,8 @@ fn illustrations(job: &Job<'_>, folder: &RunFolder, summary: &Summary) -> Result
     if let Some(period) = period(best, SAMPLES) {
         folder.write_json("figures/period.json", &period)?;
     }
-    let mut cells = BTreeSet::new();
-    let chosen: Vec<&DesignRecord> = summary
-        .front
-        .iter()
-        .filter(|d| cells.insert(d.cell))
-        .take(MOST_WAVEFORMS)
-        .collect();
-    let waveforms: Vec<PeriodRecord> = chosen
+    let waveforms: Vec<PeriodRecord> = summary
+        .exemplary(MOST_WAVEFORMS)
         .par_iter()
         .filter_map(|d| period(d, REPORT_SAMPLES))
         .collect();

@@ -9,14 +9,14 @@ use super::records::{
 };
 use super::supplies;
 use super::table;
-use crate::evaluate::Setup;
+use crate::evaluate::{Figures, Setup};
 use crate::numerics::hypervolume::hypervolume;
 use crate::search::front::{Costs, costs, non_dominated};
 use crate::search::space;
 use crate::study::{Objective, SearchSettings, Space, Study};
 use crate::technology::Inductor;
 use serde::{Deserialize, Serialize};
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 use std::path::Path;
 
 /// Square millimetres in a square metre: the unit of area in a hypervolume.
@@ -39,12 +39,20 @@ pub struct CellLine {
     front_size: usize,
     hypervolume: f64,
     evaluations: u64,
-    technology: Option<String>,
-    device: Option<String>,
-    stack: Option<u32>,
-    legs: Option<u32>,
-    frequency_hz: Option<f64>,
-    temperature_k: Option<f64>,
+    /// Largest residual of its front; none without a design, or in a run made before it was written.
+    worst_residual: Option<f64>,
+    /// Technology of its variant, where the study lists several; so with what follows.
+    pub technology: Option<String>,
+    /// Transistor pair.
+    pub device: Option<String>,
+    /// Devices a side.
+    pub stack: Option<u32>,
+    /// Legs.
+    pub legs: Option<u32>,
+    /// Carrier, Hz.
+    pub frequency_hz: Option<f64>,
+    /// Junction, K.
+    pub temperature_k: Option<f64>,
 }
 
 /// Reads `cells.csv`.
@@ -108,6 +116,38 @@ impl Standing {
             .map(|f| f.efficiency);
         self.best_efficiency = efficiency.chain(self.best_efficiency).reduce(f64::max);
     }
+}
+
+impl Summary {
+    /// Designs that stand for the front, `most` of them: its [`headlines`], then the most efficient of each cell.
+    pub fn exemplary(&self, most: usize) -> Vec<&DesignRecord> {
+        let mut cells = BTreeSet::new();
+        let of_cells = self.front.iter().filter(|d| cells.insert(d.cell));
+        let mut taken = BTreeSet::new();
+        headlines(&self.front)
+            .into_iter()
+            .flatten()
+            .chain(of_cells)
+            .filter(|d| taken.insert(&d.id))
+            .take(most)
+            .collect()
+    }
+}
+
+/// The most efficient, the strongest and the smallest of designs; of equals the first.
+pub fn headlines(designs: &[DesignRecord]) -> [Option<&DesignRecord>; 3] {
+    let least = |cost: fn(&Figures) -> f64| {
+        designs
+            .iter()
+            .filter_map(|d| Some((d, cost(d.evaluation.figures.as_ref()?))))
+            .min_by(|a, b| a.1.total_cmp(&b.1))
+            .map(|(d, _)| d)
+    };
+    [
+        least(|f| -f.efficiency),
+        least(|f| -f.output_power_w),
+        least(|f| f.area_m2),
+    ]
 }
 
 /// Costs of a record by the objectives in play.
@@ -286,6 +326,7 @@ fn line(record: &CellRecord) -> CellLine {
         front_size: record.designs.len(),
         hypervolume: record.hypervolume,
         evaluations: record.evaluations,
+        worst_residual: record.designs.iter().map(|d| d.residual).reduce(f64::max),
         technology: record.variant.as_ref().map(|v| v.technology.clone()),
         device: record.variant.as_ref().map(|v| v.device.clone()),
         stack: record.variant.as_ref().map(|v| v.stack),

@@ -9,7 +9,8 @@ room=$(mktemp -d)
 trap 'rm -rf "$room"' EXIT
 python3 -m venv "$room/python"
 "$room/python/bin/pip" install --quiet --disable-pip-version-check playwright
-cargo build --locked --quiet
+# Optimised as the tests are: a sweep is searched.
+cargo build --locked --quiet --profile test --bin widefront
 program=$(cargo metadata --locked --no-deps --format-version 1 |
     python3 -c 'import json, sys; print(json.load(sys.stdin)["target_directory"])')/debug/widefront
 "$room/python/bin/python" tests/page/check.py "$program" "$room" "$(command -v chromium)"

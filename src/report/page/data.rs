@@ -1,55 +1,71 @@
-//! A run's records as the page's script reads them: columns once, a row a design, six significant digits.
+//! A run's records as the page's script reads them: a column a figure, whole; curves to six significant digits.
 
 use super::PageInput;
-use crate::run::records::DesignRecord;
+use super::variants::Variants;
+use crate::run::records::{DesignRecord, WidthSweep};
 use serde_json::{Map, Number, Value, json};
-use std::collections::BTreeMap;
 
 /// JSON for a `script` element: nothing in it can end the element.
 pub fn embedded(input: &PageInput<'_>) -> String {
     let flat: Vec<Map<String, Value>> = input.designs.iter().map(flattened).collect();
-    let mut columns: Vec<String> = Vec::new();
-    for design in &flat {
-        columns.extend(
-            design
-                .keys()
-                .filter(|k| !columns.contains(k))
-                .cloned()
-                .collect::<Vec<_>>(),
-        );
+    let mut columns: Map<String, Value> = Map::new();
+    for name in flat.iter().flat_map(Map::keys) {
+        columns.entry(name).or_insert(Value::Null);
     }
-    let rows: Vec<Vec<Value>> = flat
-        .iter()
-        .map(|design| {
-            let value = |c: &String| design.get(c).cloned().unwrap_or(Value::Null);
-            columns.iter().map(value).collect()
-        })
-        .collect();
-    let cells: Vec<Value> = input
-        .cells
-        .iter()
-        .map(|c| json!({"cell": c.cell, "loaded_q": c.loaded_q, "supply_v": c.supply_v}))
-        .collect();
-    let waveforms: BTreeMap<&str, Value> = input
+    for (name, column) in &mut columns {
+        let value = |design: &Map<String, Value>| design.get(name).cloned().unwrap_or(Value::Null);
+        let values: Vec<Value> = flat.iter().map(value).collect();
+        // What all designs share stands once.
+        *column = match values.split_first() {
+            Some((first, rest)) if rest.iter().all(|v| v == first) => json!({ "all": first }),
+            _ => Value::Array(values),
+        };
+    }
+    let waveforms: Map<String, Value> = input
         .periods
         .iter()
         .map(|p| {
-            let short = |list: &[f64]| list.iter().map(|&x| rounded(x)).collect::<Vec<_>>();
             let wave = json!({
-                "drain_v": short(&p.waveform.drain_v),
-                "current_a": short(&p.waveform.current_a),
+                "drain_v": list(p.waveform.drain_v.iter().copied()),
+                "current_a": list(p.waveform.current_a.iter().copied()),
             });
-            (p.id.as_str(), wave)
+            (p.id.clone(), wave)
         })
         .collect();
-    let data = json!({"columns": columns, "rows": rows, "cells": cells, "waveforms": waveforms});
+    let sheets: Map<String, Value> = input.sheets.iter().cloned().collect();
+    let data = json!({
+        "count": input.designs.len(), "columns": columns, "cells": input.cells,
+        "variants": Variants::of(input.cells).embedded(), "waveforms": waveforms,
+        "sweep": input.sweep.and_then(sweep), "sheets": sheets,
+    });
     data.to_string()
         .replace('<', "\\u003c")
         .replace('>', "\\u003e")
         .replace('&', "\\u0026")
 }
 
-/// A record with nested names joined by dots; lists are joined by spaces.
+/// The widths at which the design exists; none when it exists at fewer than two.
+fn sweep(sweep: &WidthSweep) -> Option<Value> {
+    let found: Vec<_> = sweep
+        .nmos_width_m
+        .iter()
+        .zip(&sweep.evaluations)
+        .filter_map(|(width_m, e)| Some((1e6 * width_m, e.feasible, e.figures.as_ref()?)))
+        .collect();
+    let terms = found.first().map(|(_, _, f)| f.losses_w.terms().len())?;
+    (found.len() > 1).then(|| {
+        let loss = |k: usize| list(found.iter().map(|(_, _, f)| f.losses_w.terms()[k]));
+        json!({
+            "id": sweep.id,
+            "width_um": list(found.iter().map(|(width_um, _, _)| *width_um)),
+            "feasible": found.iter().map(|(_, feasible, _)| *feasible).collect::<Vec<_>>(),
+            "efficiency": list(found.iter().map(|(_, _, f)| f.efficiency)),
+            "losses": (0..terms).map(loss).collect::<Vec<_>>(),
+        })
+    })
+}
+
+/// A record with nested names joined by dots.
 fn flattened(design: &DesignRecord) -> Map<String, Value> {
     let mut flat = Map::new();
     // A record of numbers and strings always serialises.
@@ -64,13 +80,6 @@ fn flatten(prefix: &str, fields: Map<String, Value>, flat: &mut Map<String, Valu
         let name = format!("{prefix}{key}");
         match value {
             Value::Object(inner) => flatten(&format!("{name}."), inner, flat),
-            Value::Array(list) => {
-                let words: Vec<&str> = list.iter().filter_map(Value::as_str).collect();
-                flat.insert(name, words.join(" ").into());
-            }
-            Value::Number(n) if !(n.is_i64() || n.is_u64()) => {
-                flat.insert(name, n.as_f64().map_or(Value::Null, rounded));
-            }
             other => {
                 flat.insert(name, other);
             }
@@ -78,7 +87,41 @@ fn flatten(prefix: &str, fields: Map<String, Value>, flat: &mut Map<String, Valu
     }
 }
 
+fn list(values: impl Iterator<Item = f64>) -> Vec<Value> {
+    values.map(rounded).collect()
+}
+
+/// Six significant digits; what is no number stays empty.
 fn rounded(x: f64) -> Value {
     let short: f64 = format!("{x:.5e}").parse().unwrap_or(x);
     Number::from_f64(short).map_or(Value::Null, Value::Number)
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn law_six_digits_are_kept_and_what_is_no_number_stays_empty() {
+        assert_eq!(rounded(0.123_456_789), json!(0.123_457));
+        assert_eq!(rounded(0.0), json!(0.0));
+        assert_eq!(rounded(f64::NAN), Value::Null);
+        assert_eq!(rounded(f64::INFINITY), Value::Null);
+    }
+
+    #[test]
+    fn law_text_of_the_records_cannot_end_the_script() {
+        let input = PageInput {
+            run: &Value::Null,
+            designs: &[],
+            cells: &[],
+            periods: &[],
+            sweep: None,
+            sheets: &[("</script><img src=x>&".to_owned(), Value::Null)],
+        };
+        let text = embedded(&input);
+        assert!(!text.contains(['<', '>', '&']), "{text}");
+        let back: Value = serde_json::from_str(&text).unwrap();
+        assert!(back["sheets"].get("</script><img src=x>&").is_some());
+    }
 }
