@@ -124,3 +124,42 @@ fn law_a_design_that_cannot_exist_says_why() {
     assert!(json["reason"].as_str().unwrap().starts_with("spiral"));
     assert!(json.get("efficiency").is_none());
 }
+
+#[test]
+fn law_the_map_shows_the_best_of_each_cell_from_a_power_on() {
+    const LEAST_DBM: f64 = 14.0;
+    let room = tempfile::tempdir().unwrap();
+    let reference = Path::new(env!("CARGO_MANIFEST_DIR")).join("results/reference");
+    std::fs::create_dir(room.path().join("cells")).unwrap();
+    for name in ["run.json", "front.json", "cells.csv"] {
+        std::fs::copy(reference.join(name), room.path().join(name)).unwrap();
+    }
+    let mut best = Vec::new();
+    for cell in 0..4 {
+        let name = format!("cells/{cell:05}.json");
+        let bytes = std::fs::read(reference.join(&name)).unwrap();
+        std::fs::write(room.path().join(&name), &bytes).unwrap();
+        let record: serde_json::Value = serde_json::from_slice(&bytes).unwrap();
+        let figure = |design: &serde_json::Value, name: &str| design[name].as_f64().unwrap();
+        let strong = record["record"]["designs"].as_array().unwrap().iter();
+        let strong = strong.filter(|d| figure(d, "output_power_dbm") >= LEAST_DBM);
+        best.push(strong.map(|d| figure(d, "efficiency")).fold(0.0, f64::max));
+    }
+    let run = room.path().to_str().unwrap();
+    widefront()
+        .args(["report", run, "--map-power", "14 dBm"])
+        .assert()
+        .success();
+    let map = std::fs::read_to_string(room.path().join("figures/map.svg")).unwrap();
+    assert!(map.contains("from 14 dBm on"), "{map}");
+    for efficiency in best {
+        let shown = format!("\n{:.1}\n", 100.0 * efficiency);
+        assert!(efficiency == 0.0 || map.contains(&shown), "{shown}");
+    }
+    let refused = widefront()
+        .args(["report", run, "--map-power", "14 mm"])
+        .assert()
+        .code(2);
+    let said = String::from_utf8_lossy(&refused.get_output().stderr).into_owned();
+    assert!(said.contains("--map-power: read \"14 mm\""), "{said}");
+}

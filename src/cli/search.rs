@@ -122,7 +122,7 @@ fn default_folder(study: &Path, part: Option<Part>) -> Result<PathBuf, Failure> 
 
 fn close(out: &Path, finished: Finished) -> Result<(), Failure> {
     let (record, summary) = (&finished.record, &finished.summary);
-    report::write(&finished.folder).map_err(|e| {
+    report::write(&finished.folder, None).map_err(|e| {
         Failure::Run(format!(
             "{e}; the run is whole but for its report; mend this and make it by `widefront report {}` or search --resume",
             out.display()

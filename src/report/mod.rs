@@ -4,7 +4,7 @@ pub mod figures;
 pub mod page;
 
 use crate::run::RunError;
-use crate::run::folder::{RunFolder, read_front, read_optional, read_run};
+use crate::run::folder::{RunFolder, read_cell, read_front, read_optional, read_run};
 use crate::run::records::{DesignList, PeriodRecord, SupplyFront, WidthSweep};
 use crate::run::summary::{CellLine, read_cells};
 use figures::{FigureError, FigureInput};
@@ -80,20 +80,37 @@ pub fn page_of(path: &Path) -> Result<String, ReportError> {
     Ok(Records::read(path)?.page())
 }
 
-/// Makes figures and page of the run in `folder` from its records; returns the page's file.
+/// Best efficiency of each cell among the designs of its front that give `power_w` at least, in the place of its best.
+fn from_power(path: &Path, cells: &mut [CellLine], power_w: f64) -> Result<(), RunError> {
+    for cell in cells {
+        let designs = read_cell(path, cell.cell)?.map_or(Vec::new(), |record| record.designs);
+        let strong = designs.iter().filter_map(|d| d.evaluation.figures.as_ref());
+        let strong = strong.filter(|f| f.output_power_w >= power_w);
+        cell.best_efficiency = strong.map(|f| f.efficiency).reduce(f64::max);
+    }
+    Ok(())
+}
+
+/// Makes figures and page of the run in `folder` from its records; returns the page's file. The figure of cells counts
+/// designs of `map_power_w` at least.
 ///
 /// # Errors
 /// [`ReportError`]; every file is the old or the new one, whole.
-pub fn write(folder: &RunFolder) -> Result<PathBuf, ReportError> {
+pub fn write(folder: &RunFolder, map_power_w: Option<f64>) -> Result<PathBuf, ReportError> {
     let path = folder.path();
     let records = Records::read(path)?;
+    let mut cells = records.cells.clone();
+    if let Some(power_w) = map_power_w {
+        from_power(path, &mut cells, power_w)?;
+    }
     let supplies: Option<Vec<SupplyFront>> = read_optional(path, "figures/supplies.json")?;
     let limit = |name: &str| records.run["study"]["limits"][name].as_f64();
-    let best = figures::best_cells(&records.cells);
+    let best = figures::best_cells(&cells);
     let input = FigureInput {
         title: records.run["study"]["title"].as_str().unwrap_or_default(),
         designs: &records.front.designs,
         cells: &best,
+        map_power_w,
         supplies: supplies.as_deref().unwrap_or_default(),
         frequency_hz: records.run["study"]["frequency_hz"]
             .as_f64()

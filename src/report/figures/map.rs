@@ -2,6 +2,7 @@
 
 use super::style::{FAINT, INK, heading, ramp, text};
 use super::{CellBest, Drawn, FigureInput, reason};
+use crate::quantity::format_in;
 use plotters::coord::Shift;
 use plotters::prelude::*;
 use plotters::style::text_anchor::{HPos, Pos, VPos};
@@ -39,7 +40,10 @@ pub fn draw<B: DrawingBackend>(area: &DrawingArea<B, Shift>, input: &FigureInput
     let known: Vec<f64> = input.cells.iter().filter_map(|c| c.efficiency).collect();
     let least = known.iter().copied().fold(f64::INFINITY, f64::min);
     let most = known.iter().copied().fold(f64::NEG_INFINITY, f64::max);
-    let caption = format!("{}: best efficiency of each cell (%)", input.title);
+    let from = input.map_power_w.map_or(String::new(), |w| {
+        format!(" from {} on", format_in(w, "dBm"))
+    });
+    let caption = format!("{}: best efficiency of each cell{from} (%)", input.title);
     area.draw(&Text::new(caption, (24, 18), heading()))
         .map_err(reason)?;
 

@@ -52,6 +52,8 @@ pub struct FigureInput<'a> {
     pub designs: &'a [DesignRecord],
     /// Every cell: loaded Q, supply, best efficiency.
     pub cells: &'a [CellBest],
+    /// What those designs give at least, W; any where none is asked for.
+    pub map_power_w: Option<f64>,
     /// Fronts by supply; empty where the supply is free.
     pub supplies: &'a [SupplyFront],
     /// Carrier, Hz.
