@@ -102,6 +102,31 @@ fn law_a_variant_s_cells_are_those_of_its_study_alone() {
 }
 
 #[test]
+fn regress_what_one_of_several_technologies_lacks_names_it() {
+    let room = TempDir::new().unwrap();
+    let configs = Path::new(env!("CARGO_MANIFEST_DIR")).join("configs/technology");
+    let [one, two] =
+        ["demo55", "open130"].map(|t| format!("{:?}", configs.join(format!("{t}.toml"))));
+    let changes = [
+        (one.as_str(), format!("[{one}, {two}]")),
+        (
+            "device = \"core\"",
+            "device = [\"core\", \"io\"]".to_owned(),
+        ),
+    ];
+    let changes = changes.each_ref().map(|(from, to)| (*from, to.as_str()));
+    let file = study(&room, "two", &changes);
+    let refused = widefront(&["check", file.to_str().unwrap()]).code(2);
+    let said = String::from_utf8_lossy(&refused.get_output().stderr).into_owned();
+    assert!(
+        said.contains("device: read \"io\"")
+            && said.contains("\n  with ")
+            && said.contains("demo55.toml"),
+        "{said}"
+    );
+}
+
+#[test]
 fn regress_technologies_of_one_name_are_refused() {
     let room = TempDir::new().unwrap();
     let technology = Path::new(env!("CARGO_MANIFEST_DIR")).join("configs/technology/demo55.toml");

@@ -171,15 +171,22 @@ pub(crate) fn load(path: &Path, set: &[String]) -> Result<Loaded, Failure> {
     let mut technologies: BTreeMap<PathBuf, Technology> = BTreeMap::new();
     let mut variants = Vec::new();
     for variant in file.variants() {
+        let held = |faults: Faults| {
+            let of = match file.study.sweep.technologies.len() {
+                0 => String::new(),
+                _ => format!("\n  with {}", variant.study.technology.display()),
+            };
+            Failure::Input(format!("{faults}{of}"))
+        };
         let technology = match technologies.get(&variant.study.technology) {
             Some(technology) => {
-                for warning in technology::fit(&variant, technology)? {
+                for warning in technology::fit(&variant, technology).map_err(held)? {
                     warn(warning.to_string());
                 }
                 technology.clone()
             }
             None => {
-                let read = technology::read_for(&variant)?;
+                let read = technology::read_for(&variant).map_err(held)?;
                 for warning in &read.warnings {
                     warn(warning.to_string());
                 }

@@ -3,6 +3,7 @@
 use crate::quantity::format_in;
 use crate::run::summary::CellLine;
 use serde_json::{Value, json};
+use std::collections::BTreeMap;
 
 /// What a sweep may list: the name in the records, words, and how a cell's value is said.
 type Key = (&'static str, &'static str, fn(&CellLine) -> Option<String>);
@@ -53,18 +54,20 @@ impl Variants {
             .filter(|(_, _, say)| cells.windows(2).any(|w| say(&w[0]) != say(&w[1])))
             .collect();
         let mut list: Vec<Variant> = Vec::new();
+        let mut places: BTreeMap<Vec<String>, usize> = BTreeMap::new();
         for cell in cells.iter().filter(|_| !differing.is_empty()) {
             let parts: Vec<String> = differing
                 .iter()
                 .map(|(_, _, say)| say(cell).unwrap_or_default())
                 .collect();
-            match list.iter_mut().find(|v| v.parts == parts) {
-                Some(known) => known.cells.push(cell.cell),
-                None => list.push(Variant {
-                    parts,
-                    cells: vec![cell.cell],
-                }),
-            }
+            let place = *places.entry(parts).or_insert_with_key(|parts| {
+                list.push(Variant {
+                    parts: parts.clone(),
+                    cells: Vec::new(),
+                });
+                list.len() - 1
+            });
+            list[place].cells.push(cell.cell);
         }
         let keys = differing.iter().map(|k| (k.0, k.1)).collect();
         Self { keys, list }
