@@ -1,6 +1,7 @@
 //! Run folders: records, writing, reading, going on, joining.
 
 pub mod folder;
+mod illustrations;
 pub mod join;
 pub mod records;
 mod same;
