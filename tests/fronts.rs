@@ -1,8 +1,9 @@
 //! Fronts: gradients against differences, no dominated points, hypervolume against counted cubes.
 
 use proptest::prelude::*;
+use proptest::test_runner::TestRunner;
+use std::cell::Cell;
 use std::path::Path;
-use std::sync::LazyLock;
 use widefront::evaluate::Setup;
 use widefront::numerics::hypervolume::hypervolume;
 use widefront::run::folder::{read_cell, read_front};
@@ -12,8 +13,8 @@ use widefront::search::constrained::{Assessment, Constrained, Linear};
 use widefront::search::front::{Costs, costs, dominates, non_dominated};
 use widefront::search::problem::{Goal, SliceProblem};
 use widefront::search::quadratic::MOST_VARIABLES;
-use widefront::search::space::{Slice, cells, slices};
-use widefront::study::{Objective, Space};
+use widefront::search::space::{cells, slices};
+use widefront::study::{Objective, Space, StudyFile};
 use widefront::{study, technology};
 
 struct Fixture {
@@ -22,67 +23,135 @@ struct Fixture {
     objectives: Vec<Objective>,
 }
 
-static FIXTURE: LazyLock<Fixture> = LazyLock::new(|| {
+/// The quick study with changes.
+fn fixture(changes: &[(&str, &str)]) -> Fixture {
     let path = Path::new(env!("CARGO_MANIFEST_DIR")).join("configs/studies/quick.toml");
-    let file = study::read(&path).unwrap();
+    let mut text = std::fs::read_to_string(&path).unwrap();
+    for (from, to) in changes {
+        assert!(text.contains(from), "{from}");
+        text = text.replace(from, to);
+    }
+    resolved(study::read_str(&text, &path).unwrap())
+}
+
+fn resolved(file: StudyFile) -> Fixture {
     let technology = technology::read_for(&file).unwrap().technology;
     Fixture {
         setup: Setup::new(&file.study, &technology).unwrap(),
         space: file.study.space.unwrap(),
         objectives: file.study.search.objectives,
     }
-});
+}
 
-static CONTEXT: LazyLock<Context<'static>> =
-    LazyLock::new(|| Context::new(&FIXTURE.setup, &FIXTURE.space, &FIXTURE.objectives, 1));
-
-static SLICES: LazyLock<Vec<Slice>> =
-    LazyLock::new(|| slices(&FIXTURE.space, &cells(&FIXTURE.space)[1]));
-
-proptest! {
-    #![proptest_config(ProptestConfig::with_cases(200))]
-
-    /// Exact gradients of objectives and limits agree with central differences.
-    #[test]
-    fn law_gradients_agree_with_differences(
-        places in proptest::collection::vec(0.05..0.95f64, 8),
-        which in 0usize..4,
-    ) {
-        /// Step in variables scaled to 0..1; its square is the difference's own error.
-        const STEP: f64 = 1e-6;
-        /// Rounding over the step: about 1e-9 of values of order 1, grown by slopes of order 10².
-        const TOLERANCE: f64 = 2e-6;
-        let slice = &SLICES[which % SLICES.len()];
-        let problem = SliceProblem {
-            setup: &FIXTURE.setup,
-            slice,
-            coil: CONTEXT.coil_source(slice.turns).unwrap(),
-            goal: Goal { best: Objective::Efficiency, least_ln_power: Some(0.0), most_ln_area: Some(0.0) },
+/// Exact gradients of objectives and limits agree with central differences; says how many points were compared.
+fn compare_gradients(fixture: &Fixture, cases: u32) -> usize {
+    /// Step in variables scaled to 0..1; its square is the difference's own error.
+    const STEP: f64 = 1e-6;
+    /// Rounding over the step: 1e-11 where harmonics nearly cancel.
+    const TOLERANCE: f64 = 2e-5;
+    let context = Context::new(&fixture.setup, &fixture.space, &fixture.objectives, 1);
+    let slices = slices(&fixture.space, &cells(&fixture.space)[1]);
+    let compared = Cell::new(0);
+    let points = proptest::array::uniform8(0.05..0.95f64);
+    let mut runner = TestRunner::new(ProptestConfig {
+        failure_persistence: None,
+        ..ProptestConfig::with_cases(cases)
+    });
+    let checked = runner.run(&(points, 0..slices.len()), |(places, which)| {
+        let slice = &slices[which];
+        let Some(coil) = context.coil_source(slice.turns) else {
+            return Ok(());
         };
+        // The targets make output power and area constraints of the problem.
+        let problem = SliceProblem {
+            setup: &fixture.setup,
+            slice,
+            coil,
+            goal: Goal {
+                best: Objective::Efficiency,
+                least_ln_power: Some(0.0),
+                most_ln_area: Some(0.0),
+            },
+        };
+        let size = problem.size();
         let mut point = [0.0; MOST_VARIABLES];
-        point[..8].copy_from_slice(&places);
-        let Some(center) = problem.assess(&point) else { return Ok(()); };
-        for variable in 0..8 {
+        point[..size].copy_from_slice(&places[..size]);
+        let Some(center) = problem.assess(&point) else {
+            return Ok(());
+        };
+        for variable in 0..size {
             let moved = |by: f64| {
                 let mut p = point;
                 p[variable] += by;
                 problem.assess(&p)
             };
-            let (Some(up), Some(down)) = (moved(STEP), moved(-STEP)) else { continue; };
-            // The targets make output power and area constraints of the problem.
-            let all = |a: &Assessment| -> Vec<Linear> {
-                std::iter::once(&a.cost).chain(&a.constraints).copied().collect()
+            let (Some(up), Some(down)) = (moved(STEP), moved(-STEP)) else {
+                continue;
             };
-            for ((c, u), d) in all(&center).iter().zip(all(&up)).zip(all(&down)) {
+            compared.set(compared.get() + 1);
+            let all = |a: &Assessment| -> Vec<Linear> {
+                std::iter::once(&a.cost)
+                    .chain(&a.constraints)
+                    .copied()
+                    .collect()
+            };
+            for (place, ((c, u), d)) in all(&center)
+                .iter()
+                .zip(all(&up))
+                .zip(all(&down))
+                .enumerate()
+            {
                 let slope = c.gradient[variable];
                 let difference = (u.value - d.value) / (2.0 * STEP);
                 prop_assert!(
                     (difference - slope).abs() < TOLERANCE * (1.0 + slope.abs()),
-                    "variable {}: {} {}", variable, difference, slope
+                    "value {place}, variable {variable}: {difference} for {slope}; {} {} {}",
+                    d.value,
+                    c.value,
+                    u.value
                 );
             }
         }
+        Ok(())
+    });
+    assert!(checked.is_ok(), "{}", checked.unwrap_err());
+    compared.get()
+}
+
+#[test]
+fn law_gradients_agree_with_differences() {
+    const ALL_LIMITS: (&str, &str) = (
+        "third_harmonic = ",
+        "second_harmonic = \"-20 dBc\"\noverdrive_use = 0.8\nefficiency = { at_least = 0.1 }\nthird_harmonic = ",
+    );
+    let two = [("legs = 1 ", "legs = 2 "), ("stack = 1 ", "stack = 2 ")];
+    let direct = [
+        ("network = \"low-pass\"", "network = \"direct\""),
+        ("trace       = { from = \"4 um\", to = \"30 um\" }\n", ""),
+        ("trace = \"15 um\"\n", ""),
+        ("resistance = \"50 ohm\"", "resistance = \"10 ohm\""),
+    ];
+    let path = Path::new(env!("CARGO_MANIFEST_DIR")).join("tests/studies/good/fixed-inductor.toml");
+    let fixed = resolved(study::read(&path).unwrap());
+    // Many points of a box are no designs.
+    for (kind, fixture, cases) in [
+        ("one leg", fixture(&[ALL_LIMITS]), 200),
+        (
+            "two stacked legs",
+            fixture(&[ALL_LIMITS, two[0], two[1]]),
+            60,
+        ),
+        ("direct", fixture(&direct), 200),
+        ("fixed inductor", fixed, 3000),
+    ] {
+        let compared = compare_gradients(&fixture, cases);
+        println!("{kind}: {compared} derivatives compared");
+        assert!(compared > 50, "{kind}: {compared}");
     }
+}
+
+proptest! {
+    #![proptest_config(ProptestConfig::with_cases(200))]
 
     /// The hypervolume of points on whole numbers is the count of unit cubes that one of them dominates.
     #[test]
