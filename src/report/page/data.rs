@@ -7,20 +7,6 @@ use serde_json::{Map, Number, Value, json};
 
 /// JSON for a `script` element: nothing in it can end the element.
 pub fn embedded(input: &PageInput<'_>) -> String {
-    let flat: Vec<Map<String, Value>> = input.designs.iter().map(flattened).collect();
-    let mut columns: Map<String, Value> = Map::new();
-    for name in flat.iter().flat_map(Map::keys) {
-        columns.entry(name).or_insert(Value::Null);
-    }
-    for (name, column) in &mut columns {
-        let value = |design: &Map<String, Value>| design.get(name).cloned().unwrap_or(Value::Null);
-        let values: Vec<Value> = flat.iter().map(value).collect();
-        // What all designs share stands once.
-        *column = match values.split_first() {
-            Some((first, rest)) if rest.iter().all(|v| v == first) => json!({ "all": first }),
-            _ => Value::Array(values),
-        };
-    }
     let waveforms: Map<String, Value> = input
         .periods
         .iter()
@@ -34,14 +20,78 @@ pub fn embedded(input: &PageInput<'_>) -> String {
         .collect();
     let sheets: Map<String, Value> = input.sheets.iter().cloned().collect();
     let data = json!({
-        "count": input.designs.len(), "columns": columns, "cells": input.cells,
+        "count": input.designs.len(), "cells": input.cells,
         "variants": Variants::of(input.cells).embedded(), "waveforms": waveforms,
         "sweep": input.sweep.and_then(sweep), "sheets": sheets,
     });
-    data.to_string()
-        .replace('<', "\\u003c")
+    // The columns are most of the page; they go in as text.
+    let text = format!(
+        "{{\"columns\":{},{}",
+        columns(input.designs),
+        &data.to_string()[1..]
+    );
+    text.replace('<', "\\u003c")
         .replace('>', "\\u003e")
         .replace('&', "\\u0026")
+}
+
+/// A figure of all designs as JSON text; a tree of values would take ten times the memory.
+#[derive(Default)]
+struct Column {
+    /// Values so far, each followed by a comma.
+    list: String,
+    count: usize,
+    /// The first value, while all are like it.
+    common: Option<String>,
+}
+
+impl Column {
+    fn push(&mut self, value: String) {
+        if self.count == 0 {
+            self.common = Some(value.clone());
+        } else if self.common.as_ref() != Some(&value) {
+            self.common = None;
+        }
+        self.count += 1;
+        self.list += &value;
+        self.list.push(',');
+    }
+
+    /// Nulls for the designs up to `count` that lack it.
+    fn fill(&mut self, count: usize) {
+        while self.count < count {
+            self.push("null".into());
+        }
+    }
+}
+
+/// Every figure's column by its name; what all designs share stands once.
+fn columns(designs: &[DesignRecord]) -> String {
+    let mut columns: Vec<(String, Column)> = Vec::new();
+    for (place, design) in designs.iter().enumerate() {
+        for (name, value) in flattened(design) {
+            let at = columns.iter().position(|(n, _)| *n == name);
+            let at = at.unwrap_or_else(|| {
+                columns.push((name, Column::default()));
+                columns.len() - 1
+            });
+            let column = &mut columns[at].1;
+            column.fill(place);
+            column.push(value.to_string());
+        }
+    }
+    let texts: Vec<String> = columns
+        .into_iter()
+        .map(|(name, mut column)| {
+            column.fill(designs.len());
+            let name = Value::from(name);
+            match column.common {
+                Some(common) => format!("{name}:{{\"all\":{common}}}"),
+                None => format!("{name}:[{}]", column.list.trim_end_matches(',')),
+            }
+        })
+        .collect();
+    format!("{{{}}}", texts.join(","))
 }
 
 /// The widths at which the design exists; none when it exists at fewer than two.
