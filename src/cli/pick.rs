@@ -95,6 +95,7 @@ struct Table<'a> {
 
 impl<'a> Table<'a> {
     fn new(study: &'a Value) -> Self {
+        // A record without lists, or with none that can be read, has nothing to tell apart.
         let sweep: Option<Sweep> = serde_json::from_value(study["sweep"].clone()).ok();
         Self {
             study,
