@@ -15,8 +15,8 @@ if ! type sbatch slurmctld slurmd munged >/dev/null 2>&1; then
     apt-get update -qq
     DEBIAN_FRONTEND=noninteractive apt-get install -y -qq --no-install-recommends slurm-wlm munge
 fi
-# With the profile of the tests, whose build is there already when these ran.
-cargo build --locked --quiet --profile test --bin widefront
+# The program as tests of it are built, which is there already when they ran; another build would have other features.
+cargo test --locked --quiet --no-run --test kill
 export WIDEFRONT=${CARGO_TARGET_DIR:-$PWD/target}/debug/widefront
 
 farm=$(mktemp -d)

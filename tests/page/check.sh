@@ -9,8 +9,8 @@ room=$(mktemp -d)
 trap 'rm -rf "$room"' EXIT
 python3 -m venv "$room/python"
 "$room/python/bin/pip" install --quiet --disable-pip-version-check playwright
-# Optimised as the tests are: a sweep is searched.
-cargo build --locked --quiet --profile test --bin widefront
+# The program as tests of it are built: optimised, as a sweep is searched.
+cargo test --locked --quiet --no-run --test search
 program=$(cargo metadata --locked --no-deps --format-version 1 |
     python3 -c 'import json, sys; print(json.load(sys.stdin)["target_directory"])')/debug/widefront
 "$room/python/bin/python" tests/page/check.py "$program" "$room" "$(command -v chromium)"
