@@ -80,6 +80,8 @@ function legend() {
 
 /** The picture with what is chosen, told of and brushed on it. */
 function over() {
+  // Not laid out yet, or in a hidden page: the observer of its size draws it then.
+  if (!base.width || !base.height) return;
   work.over++;
   const scale = window.devicePixelRatio || 1, ring = (i, radius, width, colour) => {
     const [x, y] = [number(i, plot.fx.name), number(i, plot.fy.name)];
