@@ -121,13 +121,21 @@ fn default_folder(study: &Path, part: Option<Part>) -> Result<PathBuf, Failure> 
 }
 
 fn close(out: &Path, finished: Finished) -> Result<(), Failure> {
-    let (record, summary) = (&finished.record, &finished.summary);
-    report::write(&finished.folder, None).map_err(|e| {
+    let text = told(&finished);
+    // The report reads what it shows; a large front is not held twice.
+    let Finished { folder, .. } = finished;
+    report::write(&folder, None).map_err(|e| {
         Failure::Run(format!(
             "{e}; the run is whole but for its report; mend this and make it by `widefront report {}` or search --resume",
             out.display()
         ))
     })?;
+    print(&format!("{text}written to {}\n", out.display()))
+}
+
+/// What a finished run came to.
+fn told(finished: &Finished) -> String {
+    let (record, summary) = (&finished.record, &finished.summary);
     let mut text = String::new();
     // Writing to a String cannot fail.
     let _ = writeln!(
@@ -172,6 +180,5 @@ fn close(out: &Path, finished: Finished) -> Result<(), Failure> {
             );
         }
     }
-    let _ = writeln!(text, "written to {}", out.display());
-    print(&text)
+    text
 }

@@ -24,15 +24,29 @@ pub fn embedded(input: &PageInput<'_>) -> String {
         "variants": Variants::of(input.cells).embedded(), "waveforms": waveforms,
         "sweep": input.sweep.and_then(sweep), "sheets": sheets,
     });
-    // The columns are most of the page; they go in as text.
-    let text = format!(
-        "{{\"columns\":{},{}",
-        columns(input.designs),
-        &data.to_string()[1..]
-    );
-    text.replace('<', "\\u003c")
-        .replace('>', "\\u003e")
-        .replace('&', "\\u0026")
+    // The columns are most of the page; they go in as text, each once.
+    let mut text = String::from("{\"columns\":{");
+    for (place, (name, column)) in columns(input.designs).into_iter().enumerate() {
+        text += if place > 0 { "," } else { "" };
+        push_escaped(&mut text, &Value::from(name).to_string());
+        text += ":";
+        push_escaped(&mut text, &column.json());
+    }
+    text += "},";
+    push_escaped(&mut text, &data.to_string()[1..]);
+    text
+}
+
+/// Adds JSON in which nothing can end the script's element.
+fn push_escaped(text: &mut String, json: &str) {
+    for letter in json.chars() {
+        match letter {
+            '<' => *text += "\\u003c",
+            '>' => *text += "\\u003e",
+            '&' => *text += "\\u0026",
+            other => text.push(other),
+        }
+    }
 }
 
 /// A figure of all designs as JSON text; a tree of values would take ten times the memory.
@@ -63,10 +77,18 @@ impl Column {
             self.push("null".into());
         }
     }
+
+    /// What all designs share stands once.
+    fn json(self) -> String {
+        match self.common {
+            Some(common) => format!("{{\"all\":{common}}}"),
+            None => format!("[{}]", self.list.trim_end_matches(',')),
+        }
+    }
 }
 
-/// Every figure's column by its name; what all designs share stands once.
-fn columns(designs: &[DesignRecord]) -> String {
+/// Every figure's column by its name.
+fn columns(designs: &[DesignRecord]) -> Vec<(String, Column)> {
     let mut columns: Vec<(String, Column)> = Vec::new();
     for (place, design) in designs.iter().enumerate() {
         for (name, value) in flattened(design) {
@@ -80,18 +102,10 @@ fn columns(designs: &[DesignRecord]) -> String {
             column.push(value.to_string());
         }
     }
-    let texts: Vec<String> = columns
-        .into_iter()
-        .map(|(name, mut column)| {
-            column.fill(designs.len());
-            let name = Value::from(name);
-            match column.common {
-                Some(common) => format!("{name}:{{\"all\":{common}}}"),
-                None => format!("{name}:[{}]", column.list.trim_end_matches(',')),
-            }
-        })
-        .collect();
-    format!("{{{}}}", texts.join(","))
+    for (_, column) in &mut columns {
+        column.fill(designs.len());
+    }
+    columns
 }
 
 /// The widths at which the design exists; none when it exists at fewer than two.
