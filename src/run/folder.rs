@@ -96,7 +96,8 @@ impl RunFolder {
             let room = path.join(room);
             std::fs::create_dir_all(&room).map_err(write(&room))?;
         }
-        for place in rooms(path) {
+        let sheets = path.join("sheets");
+        for place in rooms(path).chain([sheets]).filter(|room| room.is_dir()) {
             for entry in std::fs::read_dir(&place).map_err(io(&place))?.flatten() {
                 if is_leftover(&entry.file_name()) {
                     // One that stays does no harm: nothing reads it.
@@ -167,11 +168,12 @@ fn rooms(path: &Path) -> impl Iterator<Item = PathBuf> + '_ {
     std::iter::once(path.to_owned()).chain(ROOMS.iter().map(|room| path.join(room)))
 }
 
-/// Whether a file is the temporary of a write that was killed: `.00003.json.Ab12Cd`, `.front.tmp.png`.
+/// Whether a file is the temporary of a write that was killed: `.00003.json.Ab12Cd`, `.report.html.Ab12Cd`,
+/// `.front.tmp.png`.
 fn is_leftover(name: &OsStr) -> bool {
     let name = name.to_string_lossy();
     name.starts_with('.')
-        && [".json.", ".csv.", ".tmp."]
+        && [".json.", ".csv.", ".html.", ".md.", ".svg.", ".tmp."]
             .iter()
             .any(|m| name.contains(m))
 }
