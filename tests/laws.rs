@@ -259,6 +259,26 @@ proptest! {
         prop_assert!(f.fourth_harmonic_dbc.is_none_or(|h| h < -180.0), "{:?}", f.fourth_harmonic_dbc);
     }
 
+    /// Two legs, whatever their switches: the loop's second half period is the first one with the other sign.
+    #[test]
+    fn law_two_legs_turn_the_loop_s_sign((_, stack, direct, design) in random_design()) {
+        const SAMPLES: usize = 32;
+        /// Of the largest value.
+        const MIRRORED: f64 = 1e-9;
+        let setup = Setup::new(&study(2, stack, kind(direct)), &technology()).unwrap();
+        let Some(wave) = loop_waveform(&setup, &design, SAMPLES) else {
+            return Ok(());
+        };
+        for values in [&wave.current_a, &wave.output_v] {
+            let largest = values.iter().fold(0.0, |m: f64, v| m.max(v.abs()));
+            prop_assert!(largest > 0.0);
+            for k in 0..SAMPLES / 2 {
+                let sum = values[k] + values[k + SAMPLES / 2];
+                prop_assert!(sum.abs() <= MIRRORED * largest, "{} of {}", sum, largest);
+            }
+        }
+    }
+
     /// Exchanging the switches turns the leg upside down: the same powers.
     #[test]
     fn law_exchanged_switches_have_the_same_powers((legs, stack, direct, design) in random_design()) {
